@@ -1,0 +1,68 @@
+"""From a triangulation to its oriented dual two-complex: foam skeletons that amplitude codes can read.
+
+    import dualize
+
+    t = dualize.read("region.txt")      # Triangulation: a gluing table
+    s = dualize.build(t)                # Skeleton: the oriented dual two-complex with its boundary graph
+    s.write("region.h5")
+    s = dualize.load("region.h5")
+
+A triangulation is a gluing table, a foam skeleton is a handful of flat arrays, and everything else is a pure
+function from one to the other or from the skeleton to an answer.  ``dualize spec`` prints the conventions.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from .build import build
+    from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
+    from .formats import load, read
+    from .skeleton import Skeleton
+    from .triangulation import Coordinates, Triangulation
+
+__version__ = "0.1.0"
+
+# name -> module; imported on first use, so that `import dualize` costs little more than nothing
+_HOMES = {
+    "Coordinates": "triangulation",
+    "DualizeError": "errors",
+    "InputError": "errors",
+    "LimitError": "errors",
+    "Skeleton": "skeleton",
+    "SkeletonError": "errors",
+    "Triangulation": "triangulation",
+    "TriangulationError": "errors",
+    "build": "build",
+    "load": "formats",
+    "read": "formats",
+}
+
+__all__ = [
+    "Coordinates",
+    "DualizeError",
+    "InputError",
+    "LimitError",
+    "Skeleton",
+    "SkeletonError",
+    "Triangulation",
+    "TriangulationError",
+    "__version__",
+    "build",
+    "load",
+    "read",
+]
+
+
+def __getattr__(name: str) -> Any:
+    if name in _HOMES:
+        value = getattr(import_module(f".{_HOMES[name]}", __name__), name)
+        globals()[name] = value
+        return value
+    raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+
+
+def __dir__() -> list[str]:
+    return sorted([*globals(), *_HOMES])

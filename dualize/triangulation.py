@@ -1,0 +1,503 @@
+"""The triangulation: a gluing table.
+
+Simplex `s` has corners ``0 .. D``; slot `i` is its facet opposite corner `i`.  ``across[s, i]`` is the
+simplex behind slot `i` (-1 on the boundary) and ``carry[s, i]`` the permutation that carries the corners of
+`s` to those of that simplex.  A labelled simplicial complex becomes such a table by matching facets with
+equal label sets; after that it is nothing special.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, NamedTuple
+
+import numpy as np
+
+from .errors import InputError, LimitError, TriangulationError
+from .kernels import Engine, engine
+from .kernels.labels import bucket_sizes, fill_buckets, match_buckets, sort_rows
+from .kernels.permutations import permutations_of
+
+if TYPE_CHECKING:
+    from os import PathLike
+
+__all__ = ["Coordinates", "Triangulation"]
+
+SHOWN = 10  # offenders of one kind that an error names
+
+
+class Coordinates(NamedTuple):
+    """Where the corners lie; not used by the dual, carried along and checked by the audit.
+
+    Attributes
+    ----------
+    point : ndarray of float64, shape (P, A), or None
+        One chart for all: the row of label ``p`` in a labelled complex, of point class ``p`` in a table.
+    corner : ndarray of float64, shape (N, D + 1, A), or None
+        One chart for each simplex.
+    period : ndarray of float64, shape (A,), or None
+        Period of each axis, 0 where there is none.
+    """
+
+    point: np.ndarray | None = None
+    corner: np.ndarray | None = None
+    period: np.ndarray | None = None
+
+
+@dataclass(frozen=True, eq=False, repr=False)
+class Triangulation:
+    """A triangulation of dimension D as a gluing table; make it with `from_facets` or `from_gluings`.
+
+    Attributes
+    ----------
+    across : ndarray of int32 or int64, shape (N, D + 1)
+        Simplex across each slot; -1 on the boundary.
+    rank : ndarray of uint8, shape (N, D + 1)
+        The carrying permutation of each slot by its lexicographic rank; 0 on the boundary.
+    written : ndarray of int8, shape (N,)
+        +1 or -1: the parity with which a labelled simplex was written.
+    corners : ndarray of int64, shape (N, D + 1), or None
+        Labels of the corners.
+    corner_names : tuple of str, or None
+        The words in order of code points, where labels are words; `corners` are positions in it.
+    coordinates : Coordinates, or None
+    matched : bool
+        Whether the gluings were found by matching labels, so that a set of labels names one simplex.
+    """
+
+    across: np.ndarray
+    rank: np.ndarray
+    written: np.ndarray
+    corners: np.ndarray | None = None
+    corner_names: tuple[str, ...] | None = None
+    coordinates: Coordinates | None = None
+    matched: bool = False
+
+    def __post_init__(self) -> None:
+        for name in ("across", "rank", "written", "corners"):
+            array = getattr(self, name)
+            if array is not None:
+                view = np.ascontiguousarray(array).view()
+                view.flags.writeable = False
+                object.__setattr__(self, name, view)
+
+    # -- constructors ------------------------------------------------------------------------------
+
+    @classmethod
+    def from_facets(
+        cls,
+        facets: np.ndarray | Sequence[Sequence[int]] | Sequence[Sequence[str]],
+        *,
+        coordinates: Coordinates | np.ndarray | None = None,
+        corner_names: Sequence[str] | None = None,
+        threads: int | None = None,
+    ) -> Triangulation:
+        """The triangulation whose top simplices are these lists of labels.
+
+        Parameters
+        ----------
+        facets : array_like of int or str, shape (N, D + 1)
+            Labels of the corners of each simplex, in any order; D is 2, 3 or 4.
+        coordinates : Coordinates or array_like of float, shape (P, A), optional
+            With an array, its row ``p`` belongs to label ``p``.  Corner charts follow the order in which the
+            labels are given here.
+        corner_names : sequence of str, optional
+            If given, `facets` are positions in it; it must be in order of code points.
+        threads : int, optional
+
+        Raises
+        ------
+        InputError
+            If `facets` is no such table, or a label is repeated in a simplex.
+        TriangulationError
+            If three or more simplices share a facet.
+
+        Notes
+        -----
+        Facets are matched in O(N log N) steps whatever the labels are.
+
+        Examples
+        --------
+        >>> t = Triangulation.from_facets([[0, 1, 2, 3], [1, 2, 3, 4]])
+        >>> t.across.tolist()
+        [[1, -1, -1, -1], [-1, -1, -1, 0]]
+        """
+        labels, names = _labels(facets)
+        if corner_names is not None:
+            names = tuple(corner_names)
+        n, k = labels.shape
+        run = engine(n, threads)
+        axes = tuple(range(k))
+        corners = np.empty_like(labels)
+        written = np.empty(n, dtype=np.int8)
+        bad = [
+            s
+            for s in run.split(sort_rows, n, labels.ravel(), corners.ravel(), written, axes)
+            if s >= 0
+        ]
+        if bad:
+            row = labels[bad[0]]
+            seen: set[int] = set()
+            twice = next(x for x in row.tolist() if x in seen or seen.add(x))  # type: ignore[func-returns-value]
+            raise InputError(
+                f"label {_show([twice], names)} is repeated in a simplex",
+                f"simplex {bad[0]}: {_show(row, names)}",
+                f"the {k} corners of a simplex need {k} different labels",
+            )
+        across, rank = _match(corners, run)
+        if (across == -2).any():
+            raise _crowded(corners, across, names)
+        return cls(
+            across=across,
+            rank=rank,
+            written=written,
+            corners=corners,
+            corner_names=names,
+            coordinates=_coordinates(coordinates, labels, corners),
+            matched=True,
+        )
+
+    @classmethod
+    def from_gluings(
+        cls,
+        across: np.ndarray | Sequence[Sequence[int]],
+        carry: np.ndarray | Sequence[Sequence[Sequence[int]]],
+        *,
+        written: np.ndarray | Sequence[int] | None = None,
+        corners: np.ndarray | Sequence[Sequence[int]] | None = None,
+        corner_names: Sequence[str] | None = None,
+        coordinates: Coordinates | None = None,
+    ) -> Triangulation:
+        """The triangulation with this gluing table.
+
+        Parameters
+        ----------
+        across : array_like of int, shape (N, D + 1)
+            Simplex across each slot, -1 on the boundary.
+        carry : array_like of int, shape (N, D + 1, D + 1)
+            ``carry[s, i, c]`` is the corner of ``across[s, i]`` to which corner `c` of `s` is carried, and
+            ``carry[s, i, i]`` the slot there.  Rows of boundary slots are not read.
+        written : array_like of int, shape (N,), optional
+            +1 or -1 (default +1): whether a simplex counts as positive as it stands.
+        corners : array_like of int, shape (N, D + 1), optional
+            Labels; gluings must carry equal labels to each other.
+        corner_names, coordinates : optional
+
+        Raises
+        ------
+        InputError
+            Naming the first wrong row: range, no permutation, inverse missing or different, a facet glued
+            to itself, labels that a gluing does not keep.
+        """
+        table = _integers(across, "across", 2)
+        n, k = table.shape
+        _dimension(k, "across")
+        images = _integers(carry, "carry", 3)
+        if images.shape != (n, k, k):
+            raise InputError(f"carry has the shape {images.shape}, not {(n, k, k)} as across asks for")
+        signs = np.ones(n, dtype=np.int8)
+        if written is not None:
+            given = _integers(written, "written", 1)
+            if given.shape != (n,):
+                raise InputError(f"written has {given.size} entries for {n} simplices")
+            if (wrong := np.flatnonzero((given != 1) & (given != -1))).size:
+                raise InputError(f"written is {given[wrong[0]]}, not +1 or -1", f"simplex {wrong[0]}")
+            signs = given.astype(np.int8)
+        rank = _check_gluings(table, images)
+        labels = None
+        if corners is not None:
+            labels, names = _labels(corners)
+            corner_names = names if corner_names is None else corner_names
+            if labels.shape != (n, k):
+                raise InputError(f"corners has the shape {labels.shape}, not {(n, k)} as across asks for")
+            _check_labels_kept(table, rank, labels)
+        return cls(
+            across=table.astype(_id_dtype(n)),
+            rank=rank,
+            written=signs,
+            corners=labels,
+            corner_names=None if corner_names is None else tuple(corner_names),
+            coordinates=coordinates,
+        )
+
+    # -- what it is --------------------------------------------------------------------------------
+
+    @property
+    def dimension(self) -> int:
+        """D, the dimension of the simplices."""
+        return self.across.shape[1] - 1
+
+    def __len__(self) -> int:
+        """Number of top simplices."""
+        return len(self.across)
+
+    @property
+    def carry(self) -> np.ndarray:
+        """The carrying permutations in full, int8, shape (N, D + 1, D + 1); -1 in the rows of boundary slots."""
+        images = permutations_of(self.dimension).image[self.rank]
+        images[self.across < 0] = -1
+        return images
+
+    def named(self, labels: np.ndarray) -> list:
+        """Labels as nested lists, as words where the triangulation was written in words."""
+        if self.corner_names is None:
+            return labels.tolist()
+        return np.asarray(self.corner_names, dtype=object)[labels].tolist()
+
+    def place(self, simplex: int) -> str:
+        """How an error names a simplex: its number, and its labels where it has some."""
+        if self.corners is None:
+            return f"simplex {simplex}"
+        return f"simplex {simplex}: {_show(self.corners[simplex], self.corner_names)}"
+
+    def __eq__(self, other: object) -> bool:
+        """Equal when the tables, labels, names and coordinates are."""
+        if not isinstance(other, Triangulation):
+            return NotImplemented
+        mine, theirs = self.coordinates or Coordinates(), other.coordinates or Coordinates()
+        pairs = [(getattr(self, x), getattr(other, x)) for x in ("across", "rank", "written", "corners")]
+        pairs += list(zip(mine, theirs, strict=True))
+        return self.corner_names == other.corner_names and all(
+            a is b
+            or (a is not None and b is not None and a.shape == b.shape and bool(np.array_equal(a, b)))
+            for a, b in pairs
+        )
+
+    __hash__ = None  # type: ignore[assignment]
+
+    def __repr__(self) -> str:
+        free = int((self.across < 0).sum())
+        kind = "unlabelled" if self.corners is None else "labelled"
+        return (
+            f"<Triangulation {self.dimension}D: {len(self)} simplices, {kind}, "
+            f"{free} boundary facet{'' if free == 1 else 's'}>"
+        )
+
+    def write(self, path: str | PathLike[str], *, force: bool = False, kind: str | None = None) -> None:
+        """Write the triangulation as a file; see `dualize.formats.write`."""
+        from .formats import write
+
+        write(self, path, force=force, kind=kind)
+
+
+# -- labels ----------------------------------------------------------------------------------------
+
+
+def _labels(facets: Any) -> tuple[np.ndarray, tuple[str, ...] | None]:
+    """Facets as an int64 array, and the words where labels are words."""
+    if not isinstance(facets, np.ndarray):
+        rows = list(facets) if isinstance(facets, Iterable) else facets
+        lengths = {len(r) if hasattr(r, "__len__") else -1 for r in rows}
+        if len(lengths) > 1 or -1 in lengths:
+            raise InputError(
+                "the simplices have different numbers of labels",
+                hint="every simplex of one triangulation has D + 1 labels",
+            )
+        if any(isinstance(x, bool) for r in rows for x in r):
+            raise InputError("a label is a truth value", hint="labels are integers or words")
+        try:
+            facets = np.array(rows)
+        except (ValueError, OverflowError):
+            facets = np.array(rows, dtype=object)
+    if facets.ndim != 2 or 0 in facets.shape:
+        raise InputError(
+            f"facets have the shape {facets.shape}, not (simplices, labels of each)",
+            hint="give at least one simplex, and the labels of its corners",
+        )
+    _dimension(facets.shape[1], "facets")
+    if facets.dtype.kind == "U":
+        words, positions = np.unique(facets, return_inverse=True)
+        return positions.reshape(facets.shape).astype(np.int64), tuple(words.tolist())
+    if facets.dtype.kind == "u" and facets.size and int(facets.max()) > np.iinfo(np.int64).max:
+        raise InputError("a label is beyond 64 bits", hint="number the labels anew, or write them as words")
+    if facets.dtype.kind not in "iu":
+        raise InputError(
+            f"labels are integers or words, and these are {facets.dtype}",
+            hint="a mixture of numbers and words is written as words throughout",
+        )
+    return np.ascontiguousarray(facets, dtype=np.int64), None
+
+
+def _dimension(k: int, name: str) -> None:
+    if k not in (3, 4, 5):
+        raise InputError(
+            f"{name} has {k} columns",
+            hint="a simplex has 3, 4 or 5 corners: triangles, tetrahedra or 4-simplices",
+        )
+
+
+def _show(labels: Any, names: tuple[str, ...] | None) -> str:
+    return " ".join(str(x) if names is None else names[x] for x in np.asarray(labels).tolist())
+
+
+def _id_dtype(n: int) -> type:
+    return np.int32 if n < 2**31 else np.int64
+
+
+def _compact(corners: np.ndarray) -> tuple[np.ndarray, int]:
+    """The labels as numbers from 0 in the same order, int32, and how many numbers that takes."""
+    low, high = int(corners.min()), int(corners.max())
+    if high - low <= 2 * corners.size:  # a table over the whole range is no larger than the labels themselves
+        return (corners - low).astype(np.int32), high - low + 1
+    words, positions = np.unique(corners, return_inverse=True)
+    if len(words) >= 2**31:
+        raise LimitError(f"{len(words)} different labels are more than 2**31")
+    return positions.reshape(corners.shape).astype(np.int32), len(words)
+
+
+def _match(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, np.ndarray]:
+    """`across` and `rank` of sorted labels; -2 marks facets of three or more simplices."""
+    n, k = corners.shape
+    axes = tuple(range(k))
+    points, count = _compact(corners)
+    flat = points.ravel()
+    degree = np.bincount(flat, minlength=count).astype(np.int32)
+    bucket = np.empty(2 * n, dtype=np.int8)
+    size = np.zeros(count, dtype=np.int64)
+    run(bucket_sizes, flat, degree, bucket, size, axes, n)
+    start = np.zeros(count + 1, dtype=np.int64)
+    np.cumsum(size, out=start[1:])
+    entry = np.empty(n * k, dtype=_id_dtype(n * k))
+    run(fill_buckets, flat, bucket, start[:-1].copy(), entry, axes, n)
+    across = np.empty((n, k), dtype=_id_dtype(n))
+    rank = np.empty((n, k), dtype=np.uint8)
+    # ranges of buckets with about equal numbers of half-facets
+    parts = len(run.ranges(n))
+    cuts = [0, *np.searchsorted(start, [n * k * p // parts for p in range(1, parts)]).tolist(), count]
+    calls = []
+    for lo, hi in zip(cuts[:-1], cuts[1:], strict=True):
+        room = 2 * int(size[lo:hi].max(initial=0))
+        work = (np.empty(room, np.int64), np.empty(room, np.int64), np.empty(room, np.int64))
+        keeping = permutations_of(k - 1).keeping.ravel()
+        calls.append((flat, start, entry, keeping, across.ravel(), rank.ravel(), *work, axes, lo, hi))
+    run.each(match_buckets, calls)
+    return across, rank
+
+
+def _crowded(corners: np.ndarray, across: np.ndarray, names: tuple[str, ...] | None) -> TriangulationError:
+    """The error for facets that three or more simplices share, naming the first ten."""
+    k = corners.shape[1]
+    groups: dict[tuple[int, ...], list[int]] = {}
+    for s, i in np.argwhere(across == -2).tolist():
+        groups.setdefault(tuple(np.delete(corners[s], i).tolist()), []).append(s)
+    shown = [
+        f"facet {_show(labels, names)} of simplices {', '.join(map(str, where[:SHOWN]))}"
+        + (f" and {len(where) - SHOWN} more" if len(where) > SHOWN else "")
+        for labels, where in list(groups.items())[:SHOWN]
+    ]
+    more = f"; and {len(groups) - SHOWN} more facets" if len(groups) > SHOWN else ""
+    count = "a facet lies" if len(groups) == 1 else f"{len(groups)} facets lie"
+    return TriangulationError(
+        f"{count} in three or more simplices, so there is no dual two-complex",
+        "; ".join(shown) + more,
+        f"every facet ({k - 1} labels) may belong to one or two simplices; remove or relabel the others",
+    )
+
+
+# -- gluings ---------------------------------------------------------------------------------------
+
+
+def _integers(values: Any, name: str, ndim: int) -> np.ndarray:
+    try:
+        array = np.asarray(values)
+    except ValueError:
+        array = np.empty(0, dtype=object)
+    if array.ndim != ndim or array.dtype.kind not in "iu" or (ndim > 1 and 0 in array.shape):
+        raise InputError(f"{name} is no table of integers with {ndim} dimension{'s' if ndim > 1 else ''}")
+    return array.astype(np.int64)
+
+
+def _check_gluings(across: np.ndarray, carry: np.ndarray) -> np.ndarray:
+    """Ranks of the permutations of a table, or the error that names its first wrong row."""
+    n, k = across.shape
+    tables = permutations_of(k - 1)
+
+    def refuse(bad: np.ndarray, what: str, hint: str) -> None:
+        places = np.argwhere(bad)
+        if len(places):
+            s, i = places[0].tolist()
+            more = f" and {len(places) - 1} more" if len(places) > 1 else ""
+            values = f"across {across[s, i]}, carry {carry[s, i].tolist()}"
+            raise InputError(what, f"simplex {s}, slot {i}: {values}{more}", hint)
+
+    refuse(
+        (across < -1) | (across >= n),
+        "a slot is glued to a simplex that does not exist",
+        f"simplices are numbered 0 to {n - 1}; -1 means boundary",
+    )
+    inner = across >= 0
+    images = np.where(inner[:, :, None], carry, np.arange(k))
+    refuse(
+        (np.sort(images, axis=2) != np.arange(k)).any(axis=2),
+        "the images of the corners are no permutation",
+        f"each of 0 to {k - 1} must occur once",
+    )
+    rank = tables.rank(images)
+    rows = np.arange(n)[:, None]
+    slots = np.broadcast_to(np.arange(k), (n, k))
+    there = np.where(inner, across, rows)
+    slot_there = np.where(inner, tables.image[rank, slots], slots)
+    refuse(
+        inner & (there == rows) & (slot_there == slots),
+        "a facet is glued to itself: there the two-complex folds",
+        "glue it to another facet, or leave it in the boundary (across -1)",
+    )
+    back = (across[there, slot_there] == rows) & (rank[there, slot_there] == tables.inverse[rank])
+    refuse(
+        inner & ~back,
+        "a gluing has no inverse on the other side, or another one",
+        "the slot across must lead back, by the inverse permutation",
+    )
+    rank[~inner] = 0
+    return rank
+
+
+def _check_labels_kept(across: np.ndarray, rank: np.ndarray, labels: np.ndarray) -> None:
+    n, k = across.shape
+    images = permutations_of(k - 1).image[rank]
+    for i in range(k):
+        inner = np.flatnonzero(across[:, i] >= 0)
+        theirs = np.take_along_axis(labels[across[inner, i]], images[inner, i].astype(np.int64), axis=1)
+        differ = theirs != labels[inner]
+        differ[:, i] = False
+        if differ.any():
+            s = int(inner[np.flatnonzero(differ.any(axis=1))[0]])
+            raise InputError(
+                "a gluing carries a corner to one with another label",
+                f"simplex {s}, slot {i}: labels {labels[s].tolist()} meet {labels[across[s, i]].tolist()}",
+                "leave the labels out, or mend the gluing",
+            )
+
+
+# -- coordinates -----------------------------------------------------------------------------------
+
+
+def _coordinates(given: Any, labels: np.ndarray, corners: np.ndarray) -> Coordinates | None:
+    """Coordinates checked, and corner charts brought into the order of the sorted corners."""
+    if given is None:
+        return None
+    if not isinstance(given, Coordinates):
+        given = Coordinates(point=np.asarray(given))
+    point, chart, period = (None if x is None else np.asarray(x, dtype=np.float64) for x in given)
+    axes = None
+    if point is not None:
+        if point.ndim != 2:
+            raise InputError(f"coordinates have the shape {point.shape}, not (points, axes)")
+        axes = point.shape[1]
+        if int(labels.min()) < 0 or int(labels.max()) >= len(point):
+            bad = int(np.flatnonzero(((labels < 0) | (labels >= len(point))).any(axis=1))[0])
+            raise InputError(
+                f"there are {len(point)} rows of coordinates, and a label has none",
+                f"simplex {bad}: {_show(labels[bad], None)}",
+                "row p of the coordinates belongs to label p, counted from 0",
+            )
+    if chart is not None:
+        if chart.ndim != 3 or chart.shape[:2] != labels.shape:
+            raise InputError(f"corner coordinates have the shape {chart.shape}, not {(*labels.shape, 'axes')}")
+        axes = chart.shape[2]
+        order = np.argsort(labels, axis=1, kind="stable")
+        chart = np.take_along_axis(chart, order[:, :, None], axis=1)
+    if period is not None and period.shape != (axes,):
+        raise InputError(f"the period has {period.size} entries for {axes} axes")
+    return Coordinates(point, chart, period)

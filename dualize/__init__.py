@@ -16,8 +16,11 @@ from __future__ import annotations
 from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
+# A function that bears its module's name is imported at once: were it left to `__getattr__`, importing the
+# module first (`import dualize.build`) would bind the name to the module.
+from .build import build
+
 if TYPE_CHECKING:
-    from .build import build
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
     from .formats import load, read
     from .skeleton import Skeleton
@@ -25,7 +28,7 @@ if TYPE_CHECKING:
 
 __version__ = "0.1.0"
 
-# name -> module; imported on first use, so that `import dualize` costs little more than nothing
+# name -> module; imported on first use, so that `import dualize` costs little more than numpy
 _HOMES = {
     "Coordinates": "triangulation",
     "DualizeError": "errors",
@@ -35,7 +38,6 @@ _HOMES = {
     "SkeletonError": "errors",
     "Triangulation": "triangulation",
     "TriangulationError": "errors",
-    "build": "build",
     "load": "formats",
     "read": "formats",
 }

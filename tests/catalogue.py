@@ -20,7 +20,7 @@ FOLDER = Path(__file__).parent / "catalogue"
 
 @dataclass(frozen=True)
 class Entry:
-    """The values of one triangulation: `f` counts its simplices, `vertices` and what follows cells of the dual."""
+    """The values of one triangulation: `f` counts its simplices, `vertices` and below cells of the dual."""
 
     name: str
     title: str
@@ -90,11 +90,12 @@ def small_gluings():
     `tetrahedra_1_*` (4) and `tetrahedra_2_*` (17, of which one is non-orientable): all closed 3-manifold
     gluings of one and two tetrahedra up to relabelling.  Enumerated exhaustively; the numbers agree with
     B. A. Burton, The Pachner graph and the simplification of 3-sphere triangulations, SoCG 2011, and the
-    first homology groups with S. V. Matveev, Complexity theory of three-dimensional manifolds, Acta Appl. Math. 19
-    (1990) 101-130 (both from memory).
+    first homology groups with S. V. Matveev, Complexity theory of three-dimensional manifolds, Acta Appl.
+    Math. 19 (1990) 101-130 (both from memory).
 
     `four_simplices_2_*` (8): all orientable closed gluings of two 4-simplices whose vertex links are
-    3-spheres, up to relabelling; enumerated exhaustively (500529 candidates), six of Euler characteristic 2, two of 0.
+    3-spheres, up to relabelling; enumerated exhaustively (500529 candidates): six of Euler characteristic 2,
+    two of 0.
     """
     tetrahedra = json.loads((FOLDER / "gluings_tetrahedra_1_2.json").read_text())
     four = json.loads((FOLDER / "gluings_two_4_simplices.json").read_text())

@@ -8,6 +8,7 @@ section of the conventions.  The tests compare the package with it table by tabl
     skeleton["edges/source"]            # nested lists, under the names of the layout
 """
 
+from collections import Counter
 from dataclasses import dataclass
 from itertools import combinations, pairwise
 
@@ -169,9 +170,9 @@ def ridge_walks(table):
                     behind.append(turned(state))
                     state = step(table, state)
                 walk = behind[::-1] + walk
-            if any(turned(state) in walk for state in walk):
-                raise Refused("folded ridge", f"wedge {walk[0]}")
             seen.update(walk)
+            if any(turned(state) in seen for state in walk):
+                raise Refused("folded ridge", f"wedge {walk[0]}")
             walks.append((ring, walk))
     return walks
 
@@ -401,7 +402,8 @@ def singular_faces(table, walks, keep_singular):
     if table.matched:
         twins = len({tuple(c) for c in table.corners}) < len(table.corners)
         labels = [tuple(ridge_labels(table, smallest)) for _, smallest, _ in walks]
-        pinched = [labels.count(ridge) > 1 for ridge in labels] if len(set(labels)) < len(labels) else pinched
+        number = Counter(labels)
+        pinched = [number[ridge] > 1 for ridge in labels]
     if not keep_singular:
         for kind, found in (("twins", twins), ("holonomy", any(holonomy)), ("pinched ridge", any(pinched))):
             if found:
@@ -413,13 +415,14 @@ def singular_faces(table, walks, keep_singular):
 
 def classes_in_order(n, pairs):
     """Number of the class of each of 0..n-1 under `pairs`, classes numbered by smallest member."""
-    group = list(range(n))
+    members = [[x] for x in range(n)]  # one list for each class, shared by its members
     for a, b in pairs:
-        a, b = group[a], group[b]
-        if a != b:
-            group = [a if g == b else g for g in group]
+        if members[a] is not members[b]:
+            members[a] += members[b]
+            for x in members[b]:
+                members[x] = members[a]
     numbers = {}
-    return [numbers.setdefault(g, len(numbers)) for g in group]
+    return [numbers.setdefault(id(group), len(numbers)) for group in members]
 
 
 def name_points(table, out):

@@ -1,4 +1,4 @@
-"""Both sides of every Pachner move have the same boundary, signs included, and counts that differ as published.
+"""Both sides of a Pachner move have the same boundary, signs included, and counts that differ as published.
 
 U. Pachner, P.L. homeomorphic manifolds are equivalent by elementary shellings, European J. Combin. 12 (1991)
 129-145 (from memory).

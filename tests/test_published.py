@@ -166,7 +166,7 @@ def test_densities_of_the_periodic_grid(shape):
 
 K = {n: nx.complete_graph(n) for n in (2, 3, 4, 5)}
 
-    "slab over a sphere": (lambda: built(slab(sphere(3))), (20, 45, 40), nx.disjoint_union(K[5], K[5])),
+# name -> (skeleton, (V, E_int, F_int), boundary graph).  Common practice: the boundary of one side of a move
 # is a join of two boundaries of simplices, so its dual graph is a product of complete graphs; round a ridge,
 # a product of a complete graph and a cycle.  Counts by hand.
 BOUNDARIES = {

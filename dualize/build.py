@@ -6,6 +6,7 @@ same on every run and for every number of threads.
 
 from __future__ import annotations
 
+import os
 from typing import NamedTuple
 
 import numpy as np
@@ -13,9 +14,10 @@ import numpy as np
 from .errors import TriangulationError
 from .kernels import Engine, engine
 from .kernels.classes import join_pairs, join_points, join_segments, number_classes, number_segments
-from .kernels.faces import fill_edge_faces, fill_faces, walk_ridges
+from .kernels.faces import fill_edge_faces, pack_rows, place_faces, walk_ridges
 from .kernels.orient import count_edges, fill_edges, spread_orientation
 from .kernels.permutations import Permutations, permutations_of
+from .kernels.repeats import any_repeat, fill_keys, mix_rows
 from .layout import id_dtype, wedge_pairs
 from .skeleton import Skeleton
 from .triangulation import SHOWN, Triangulation
@@ -72,19 +74,18 @@ def build(
         )
     orientation, component, parts = _orient(work)
     edges = _edges(work, orientation)
-    walks = _walk(work, orientation, edges.ordered)
-    ridges = _ridges(work, walks) if t.corners is not None else None
-    singular = _singular(work, walks, ridges, keep_singular)
-    arrays, twist_along = _faces(work, edges, walks)
-    boundary = _boundary(work, edges, arrays, twist_along, walks.internal, ridges)
+    faces = _faces(work, orientation, edges)
+    ridges = None if t.corners is None else _ridges(work, faces)
+    singular = _singular(work, faces, ridges, keep_singular)
+    boundary = _boundary(work, edges, faces, ridges)
 
     v, interior, nodes = len(t), edges.interior, len(edges.arrays["nodes/vertex"])
-    external = len(walks.vertex_offsets) - 1 - walks.internal
+    external = len(faces.twists) - faces.internal
     counts = {
         "vertices": v,
         "edges_internal": interior,
         "edges_external": nodes,
-        "faces_internal": walks.internal,
+        "faces_internal": faces.internal,
         "faces_external": external,
         "nodes": nodes,
         "links": external,
@@ -100,14 +101,14 @@ def build(
         "vertices/orientation": orientation,
         "vertices/component": component,
         **edges.arrays,
-        **arrays,
+        **faces.arrays,
         **boundary,
     }
     if t.corners is not None:
         tables["vertices/corners"] = t.corners
     if kept:
         tables["faces/singular"] = (
-            np.zeros(len(walks.vertex_offsets) - 1, dtype=np.int8) if singular is None else singular
+            np.zeros(len(faces.twists), dtype=np.int8) if singular is None else singular
         )
     if points:
         tables |= _points(work)
@@ -155,12 +156,11 @@ class _Edges(NamedTuple):
     ordered: bool
 
 
-class _Walks(NamedTuple):
-    vertex: np.ndarray  # simplex of each passage, faces one after the other, internal ones first
-    code: np.ndarray  # 2 * wedge + direction
-    vertex_offsets: np.ndarray
-    holonomy: np.ndarray  # one per internal face
+class _Faces(NamedTuple):
+    arrays: dict[str, np.ndarray]
     internal: int
+    holonomy: np.ndarray  # bool, one per internal face
+    twists: np.ndarray  # mod 2, one per face
 
 
 def _orient(work: _Work) -> tuple[np.ndarray, np.ndarray, int]:
@@ -214,138 +214,117 @@ def _edges(work: _Work, orientation: np.ndarray) -> _Edges:
     return _Edges(a, interior, scrambled == 0)
 
 
-def _walk(work: _Work, orientation: np.ndarray, ordered: bool) -> _Walks:
-    """Walk all ridges; the passages of internal faces first, then those of external ones."""
-    n, w, ids = work.n, work.w, work.ids
-    ranges = work.run.ranges(n)
-    seen = np.zeros(n * w, dtype=np.uint8)
-    room = n * w if len(ranges) == 1 else n * w // len(ranges) + 1024
-    states: list[_Walker] = [_Walker(room, ids, lo * w) for lo, _ in ranges]
-    pending = list(range(len(ranges)))
-    while pending:
-        done = work.run.each(
-            walk_ridges,
-            [
-                (work.across, work.rank, work.image, work.tables.compose.ravel(), work.pair, orientation, seen)
-                + states[r].buffers
-                + (work.axes, int(ordered), *ranges[r])
-                for r in pending
-            ],
-        )
-        for r, state in zip(pending, done, strict=True):
-            states[r].empty(larger=state < 0)
-        pending = [r for r, state in zip(pending, done, strict=True) if state != 1]
-    rings = [chunk for s in states for chunk in s.rings]
-    chains = [chunk for s in states for chunk in s.chains]
-    length = np.concatenate([c.length for c in rings] + [c.length for c in chains])
-    offsets = np.zeros(len(length) + 1, dtype=np.int64)
-    np.cumsum(length, out=offsets[1:])
-    return _Walks(
-        vertex=_joined([c.vertex for c in rings + chains]),
-        code=_joined([c.code for c in rings + chains]),
-        vertex_offsets=offsets,
-        holonomy=_joined([c.holonomy for c in rings]),
-        internal=sum(len(c.length) for c in rings),
-    )
+class _Part(NamedTuple):
+    """Faces as `walk_ridges` recorded them, rings or chains."""
 
-
-class _Chunk(NamedTuple):
     vertex: np.ndarray
     code: np.ndarray
+    edge: np.ndarray
+    sign: np.ndarray
+    place: np.ndarray
     length: np.ndarray
-    holonomy: np.ndarray
+    bits: np.ndarray
+
+    @classmethod
+    def empty(cls, room: int, ids: type) -> _Part:
+        return cls(*(np.empty(room, dtype=t) for t in (ids, np.int8, ids, np.int8, np.int8, ids, np.int8)))
+
+    def cut(self, visits: int, faces: int, lead: int) -> _Part:
+        steps = visits + lead * faces
+        ends = (visits, visits, steps, steps, steps, faces, faces)
+        return _Part(*(array[:end] for array, end in zip(self, ends, strict=True)))
 
 
-class _Walker:
-    """The buffers of one range of `walk_ridges`, and the chunks emptied from them."""
+def _walk(work: _Work, orientation: np.ndarray, edges: _Edges) -> tuple[list[_Part], list[_Part]]:
+    """Walk all ridges: the rings and the chains, each in the order of their smallest wedges."""
+    n, w, ids, run = work.n, work.w, work.ids, work.run
+    width = np.dtype(ids).itemsize
+    # rows begin on cache lines
+    room = np.empty(n * 16 * width + 64, dtype=np.uint8)
+    octets = room[-room.ctypes.data % 64 :][: n * 16 * width]
+    words = octets.view(ids)
+    e = edges.arrays
+    edge, leaves = e["vertices/edge"].ravel(), e["vertices/leaves"].ravel()
+    run.split(
+        pack_rows, n, work.across, work.rank, edge, leaves, e["edges/twist"], words, octets, width, work.axes
+    )
 
-    def __init__(self, room: int, ids: type, first_wedge: int) -> None:
-        self.ids = ids
-        self.rings: list[_Chunk] = []
-        self.chains: list[_Chunk] = []
-        self.progress = np.array([first_wedge, 0, 0, 0, 0], dtype=np.int64)
-        self._allocate(room)
-
-    def _allocate(self, room: int) -> None:
-        self.room = room
-        self.ring = _Chunk(*(np.empty(room, dtype=t) for t in (self.ids, np.int8, self.ids, np.int8)))
-        self.chain = _Chunk(*(np.empty(room, dtype=t) for t in (self.ids, np.int8, self.ids, np.int8)))
-
-    @property
-    def buffers(self) -> tuple[np.ndarray, ...]:
-        return (*self.ring, *self.chain[:3], self.progress)
-
-    def empty(self, larger: bool) -> None:
-        """Move what was recorded into a chunk; make the buffers `larger` where one face alone needs it."""
-        _, passages, rings, chain_passages, chains = self.progress.tolist()
-        for chunks, buffer, visits, faces in (
-            (self.rings, self.ring, passages, rings),
-            (self.chains, self.chain, chain_passages, chains),
-        ):
-            chunks.append(
-                _Chunk(
-                    buffer.vertex[:visits].copy(),
-                    buffer.code[:visits].copy(),
-                    buffer.length[:faces].copy(),
-                    buffer.holonomy[:faces].copy(),
-                )
+    def walk(lo: int, hi: int) -> tuple[list[_Part], list[_Part]]:
+        rings, chains = [], []
+        progress = np.array([lo * w, 0, 0, 0, 0, 0], dtype=np.int64)
+        room = min(n * w, max(4 * (hi - lo) * w, 1 << 16)) + 1
+        state = 0
+        while state != 1:
+            ring, chain = _Part.empty(room, ids), _Part.empty(2 * room, ids)
+            progress[1:] = 0
+            state = run.here(
+                walk_ridges,
+                words,
+                octets,
+                width,
+                work.image,
+                work.tables.compose.ravel(),
+                work.tables.place.ravel(),
+                work.pair,
+                work.slots.ravel(),
+                orientation,
+                *ring,
+                *chain,
+                progress,
+                work.axes,
+                int(edges.ordered),
+                hi,
             )
-        self.progress[1:] = 0
-        if larger:
-            self._allocate(2 * self.room)
+            _, passages, ring_count, chain_passages, chain_count, _ = progress.tolist()
+            rings.append(ring.cut(passages, ring_count, 0))
+            chains.append(chain.cut(chain_passages, chain_count, 1))
+            if state < 0:
+                room *= 4
+        return rings, chains
+
+    # small ranges, taken in order: most walks then find no mark that is still to come
+    blocks = run.ranges(n, 1 if run.threads == 1 else max(run.threads, n // 50_000))
+    walked = run.tasks([lambda lo=lo, hi=hi: walk(lo, hi) for lo, hi in blocks])
+    return [part for rings, _ in walked for part in rings], [part for _, chains in walked for part in chains]
 
 
-def _joined(parts: list[np.ndarray]) -> np.ndarray:
-    return parts[0] if len(parts) == 1 else np.concatenate(parts)
-
-
-def _faces(work: _Work, edges: _Edges, walks: _Walks) -> tuple[dict[str, np.ndarray], np.ndarray]:
-    """All tables of wedges and faces, and the places of the faces on the edges."""
-    n, k, w, d, ids = work.n, work.k, work.w, work.d, work.ids
-    offsets = walks.vertex_offsets
-    faces = len(offsets) - 1
-    # an external face has one edge more than vertices
-    edge_offsets = offsets + np.maximum(np.arange(faces + 1) - walks.internal, 0)
-    visits, steps = int(offsets[-1]), int(edge_offsets[-1])
+def _faces(work: _Work, orientation: np.ndarray, edges: _Edges) -> _Faces:
+    """All tables of wedges and faces, and the faces at each edge."""
+    n, w, d, ids, run = work.n, work.w, work.d, work.ids, work.run
+    rings, chains = _walk(work, orientation, edges)
+    internal = sum(len(part.length) for part in rings)
+    faces = internal + sum(len(part.length) for part in chains)
+    visits, steps = n * w, n * w + faces - internal
     total = len(edges.arrays["edges/twist"])
     a = {
+        "faces/vertex_offsets": np.zeros(faces + 1, dtype=np.int64),
+        "faces/edge_offsets": np.zeros(faces + 1, dtype=np.int64),
+        "faces/vertex": np.empty(visits, dtype=ids),
         "faces/wedge": np.empty(visits, dtype=np.int8),
-        "wedges/face": np.empty((n, w), dtype=ids),
-        "wedges/direction": np.empty((n, w), dtype=np.int8),
         "faces/edge": np.empty(steps, dtype=ids),
         "faces/edge_sign": np.empty(steps, dtype=np.int8),
         "faces/place": np.empty(steps, dtype=np.int8),
         "faces/against": np.empty(faces, dtype=np.int8),
     }
-    twist_along = np.empty(faces, dtype=np.int8)
-    flat = [table.ravel() for table in a.values()]
-    e = edges.arrays
-    work.run.split(
-        fill_faces,
-        faces,
-        walks.vertex,
-        walks.code,
-        offsets,
-        edge_offsets,
-        work.across,
-        work.rank,
-        work.image,
-        work.tables.place.ravel(),
-        work.slots.ravel(),
-        e["vertices/edge"].ravel(),
-        e["vertices/leaves"].ravel(),
-        e["edges/twist"],
-        *flat,
-        twist_along,
-        work.axes,
-        walks.internal,
-    )
-    a["faces/vertex_offsets"] = offsets
-    a["faces/vertex"] = walks.vertex
-    a["faces/edge_offsets"] = edge_offsets
+    twists = np.empty(faces, dtype=np.int8)
+    wedge_face = np.empty((n, w), dtype=ids)
+    wedge_direction = np.empty((n, w), dtype=np.int8)
+    holonomy = np.concatenate([part.bits for part in rings]) & 1 == 1
+    out = (*a.values(), twists, wedge_face.ravel(), wedge_direction.ravel(), w)
+    calls = []
+    face = visit = step = 0
+    for lead, parts in ((0, rings), (1, chains)):
+        for part in parts:
+            calls.append((*part, *out, len(part.length), face, visit, step, lead))
+            face += len(part.length)
+            visit += len(part.vertex)
+            step += len(part.edge)
+    run.each(place_faces, calls)
+    a["wedges/face"], a["wedges/direction"] = wedge_face, wedge_direction
     a["edges/face"] = np.empty((total, d), dtype=ids)
     a["edges/face_sign"] = np.empty((total, d), dtype=np.int8)
-    work.run.split(
+    e = edges.arrays
+    run.split(
         fill_edge_faces,
         total,
         e["edges/source"].ravel(),
@@ -353,24 +332,20 @@ def _faces(work: _Work, edges: _Edges, walks: _Walks) -> tuple[dict[str, np.ndar
         e["edges/source_corner"].ravel(),
         e["edges/target_corner"].ravel(),
         work.pair,
-        a["wedges/face"].ravel(),
-        a["wedges/direction"].ravel(),
+        wedge_face.ravel(),
+        wedge_direction.ravel(),
         a["edges/face"].ravel(),
         a["edges/face_sign"].ravel(),
         work.axes,
     )
-    return a, twist_along
+    return _Faces(a, internal, holonomy, twists)
 
 
 def _boundary(
-    work: _Work,
-    edges: _Edges,
-    arrays: dict[str, np.ndarray],
-    twist_along: np.ndarray,
-    internal: int,
-    ridges: np.ndarray | None,
+    work: _Work, edges: _Edges, faces: _Faces, ridges: np.ndarray | None
 ) -> dict[str, np.ndarray]:
     """The tables of nodes and links.  A link runs from the node where its face ends to where it starts."""
+    arrays, internal = faces.arrays, faces.internal
     vertex, slot = edges.arrays["nodes/vertex"], edges.arrays["nodes/slot"]
     nodes = len(vertex)
     inner = edges.interior
@@ -389,7 +364,7 @@ def _boundary(
         "links/source": source,
         "links/target": target,
         "links/face": np.arange(internal, internal + len(source), dtype=work.ids),
-        "links/twist": twist_along[internal:],
+        "links/twist": faces.twists[internal:],
     }
     if work.t.corners is not None and ridges is not None:
         others = np.array([[c for c in range(work.k) if c != i] for i in range(work.k)])
@@ -398,14 +373,13 @@ def _boundary(
     return out
 
 
-def _ridges(work: _Work, walks: _Walks) -> np.ndarray:
+def _ridges(work: _Work, faces: _Faces) -> np.ndarray:
     """Labels of the ridge of every face, shape (F, D - 1), read at its first passage."""
     assert work.t.corners is not None
-    first = walks.vertex_offsets[:-1]
+    first = faces.arrays["faces/vertex_offsets"][:-1]
     others = np.array([[c for c in range(work.k) if c not in pair] for pair in work.slots.tolist()])
-    return np.take_along_axis(
-        work.t.corners[walks.vertex[first]], others[walks.code[first] // 2], axis=1
-    )
+    vertex, wedge = faces.arrays["faces/vertex"][first], faces.arrays["faces/wedge"][first]
+    return np.take_along_axis(work.t.corners[vertex], others[wedge], axis=1)
 
 
 # -- what is refused, or kept on request ---------------------------------------------------------
@@ -422,22 +396,24 @@ def _twins(t: Triangulation) -> np.ndarray:
 
 
 def _singular(
-    work: _Work, walks: _Walks, ridges: np.ndarray | None, keep_singular: bool
+    work: _Work, faces: _Faces, ridges: np.ndarray | None, keep_singular: bool
 ) -> np.ndarray | None:
     """``faces/singular``, None where every face is regular; refused unless kept on request."""
-    singular = np.zeros(len(walks.vertex_offsets) - 1, dtype=np.int8)
-    singular[: walks.internal] = walks.holonomy
-    if ridges is not None and work.t.matched:
-        singular[_repeated(ridges)] += 2
-    if not singular.any():
+    pinches = ridges is not None and work.t.matched and _has_repeats(work.run, ridges)
+    if not pinches and not faces.holonomy.any():
         return None
+    singular = np.zeros(len(faces.twists), dtype=np.int8)
+    singular[: faces.internal] = faces.holonomy
+    if pinches:
+        _, group, size = np.unique(ridges, axis=0, return_inverse=True, return_counts=True)
+        singular[size[group.ravel()] > 1] += 2
     if keep_singular:
         return singular
-    first = walks.vertex_offsets[:-1]
+    first = faces.arrays["faces/vertex_offsets"]
 
     def place(face: int) -> str:
-        s, wedge = int(walks.vertex[first[face]]), int(walks.code[first[face]]) // 2
-        i, j = work.slots[wedge].tolist()
+        s = int(faces.arrays["faces/vertex"][first[face]])
+        i, j = work.slots[faces.arrays["faces/wedge"][first[face]]].tolist()
         if ridges is None:
             return f"simplex {s}, slots {i} and {j}"
         return f"ridge {_labels(work.t, ridges[face])} at simplex {s}"
@@ -470,19 +446,23 @@ def _refuse(what: str, places: list[str], count: int) -> TriangulationError:
     )
 
 
-def _repeated(rows: np.ndarray) -> np.ndarray:
-    """Which rows of labels occur more than once, bool, shape (F,)."""
-    low = int(rows.min())
-    span = int(rows.max()) - low + 1
-    if span ** rows.shape[1] < 2**63:
-        key = np.zeros(len(rows), dtype=np.int64)
-        for column in rows.T:
-            key = key * span + (column - low)
-        ordered = np.sort(key)
-        if not (ordered[1:] == ordered[:-1]).any():
-            return np.zeros(len(rows), dtype=bool)
-    _, group, size = np.unique(rows, axis=0, return_inverse=True, return_counts=True)
-    return size[group.ravel()] > 1
+def _has_repeats(run: Engine, rows: np.ndarray) -> bool:
+    """Whether a row of labels occurs more than once."""
+    n, m = rows.shape
+    axes = tuple(range(m))
+    factors = np.frombuffer(os.urandom(8 * m), dtype=np.int64) >> 1 | 1
+    shift = 63 - max(1, (n // 16).bit_length())
+    key = np.empty(n, dtype=np.int64)
+    size = np.zeros(1 << (63 - shift), dtype=np.int64)
+    run(mix_rows, rows.ravel(), factors, key, size, shift, axes, n)
+    start = np.zeros(len(size) + 1, dtype=np.int64)
+    np.cumsum(size, out=start[1:])
+    entry = np.empty(n, dtype=np.int64)
+    run(fill_keys, key, start[:-1].copy(), entry, shift, n)
+    if not any(run.split(any_repeat, len(size), start, entry)):
+        return False
+    # equal keys are equal rows but for an accident
+    return len(np.unique(rows, axis=0)) < n
 
 
 def _labels(t: Triangulation, labels: np.ndarray) -> str:

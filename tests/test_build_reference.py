@@ -43,8 +43,8 @@ def way(kind):
     """Kernels of one kind.  Small input is never shared among threads; "finely cut" shares any, so that rings
     and chains cross from thread to thread in small complexes too."""
 
-    def ranges(engine, length):
-        parts = max(1, min(engine.threads, length))
+    def ranges(engine, length, parts=None):
+        parts = max(1, min(parts or engine.threads, length))
         return list(pairwise(length * part // parts for part in range(parts + 1)))
 
     if kind == "finely cut":

@@ -31,33 +31,43 @@ _forced: list[str] = []
 
 
 class Engine:
-    """Runs kernels in one way: interpreted, or compiled with a number of threads."""
+    """Runs kernels in one way: interpreted, or compiled with a number of threads.
 
-    def __init__(self, compiled: bool, threads: int) -> None:
+    With `inline` compiled kernels run in the calling thread, which is quicker where there is little to do.
+    """
+
+    def __init__(self, compiled: bool, threads: int, inline: bool = False) -> None:
         self.compiled = compiled
         self.threads = threads if compiled else 1
+        self.inline = inline or not compiled
 
     def __call__(self, kernel: Callable, *arguments: Any) -> Any:
         """Run one kernel as a whole."""
+        return self.tasks([lambda: self.here(kernel, *arguments)])[0]
+
+    def here(self, kernel: Callable, *arguments: Any) -> Any:
+        """Run one kernel in the calling thread (inside a task of `tasks`, say)."""
         if not self.compiled:
-            return kernel(*(_view(a) for a in arguments))
-        return _in_threads(_compile(kernel), [arguments])[0]
+            return kernel(*[memoryview(a) if isinstance(a, np.ndarray) else a for a in arguments])
+        return _compile(kernel)(*arguments)
 
     def split(self, kernel: Callable, length: int, *arguments: Any) -> list[Any]:
         """Run a kernel on ranges that cover ``0 .. length - 1``; its results in the order of the ranges."""
-        if not self.compiled:
-            return [self(kernel, *arguments, 0, length)]
-        return _in_threads(_compile(kernel), [(*arguments, lo, hi) for lo, hi in self.ranges(length)])
+        return self.each(kernel, [(*arguments, lo, hi) for lo, hi in self.ranges(length)])
 
     def each(self, kernel: Callable, calls: list[tuple]) -> list[Any]:
-        """Run a kernel once for every tuple of arguments, side by side; at most `threads` of them."""
-        if not self.compiled:
-            return [self(kernel, *arguments) for arguments in calls]
-        return _in_threads(_compile(kernel), calls)
+        """Run a kernel once for every tuple of arguments."""
+        return self.tasks([lambda call=call: self.here(kernel, *call) for call in calls])
 
-    def ranges(self, length: int) -> list[tuple[int, int]]:
-        """`threads` ranges of almost equal length (fewer where there is little to share)."""
-        parts = max(1, min(self.threads, length // 1024))
+    def tasks(self, functions: list[Callable[[], Any]]) -> list[Any]:
+        """Call the functions, at most `threads` at a time and begun in order; their results in order."""
+        if self.inline:
+            return [function() for function in functions]
+        return _in_threads(functions, self.threads)
+
+    def ranges(self, length: int, parts: int | None = None) -> list[tuple[int, int]]:
+        """`parts` ranges (by default one for each thread) of almost equal length, fewer of a short one."""
+        parts = max(1, min(parts or self.threads, length // 1024))
         cuts = [length * part // parts for part in range(parts + 1)]
         return list(zip(cuts[:-1], cuts[1:], strict=True))
 
@@ -74,7 +84,8 @@ def engine(size: int, threads: int | None = None) -> Engine:
     """
     if _forced:
         return Engine(_forced[-1] == "compiled", thread_count(threads))
-    return Engine(size >= COMPILE_FROM or bool(_compiled), thread_count(threads))
+    large = size >= COMPILE_FROM
+    return Engine(large or bool(_compiled), thread_count(threads), inline=not large)
 
 
 @contextmanager
@@ -97,10 +108,6 @@ def thread_count(threads: int | None = None) -> int:
     return max(1, threads)
 
 
-def _view(argument: Any) -> Any:
-    return memoryview(argument) if isinstance(argument, np.ndarray) else argument
-
-
 def _compile(kernel: Callable) -> Callable:
     if kernel not in _compiled:
         import numba
@@ -119,18 +126,25 @@ def _cached(dispatcher: Any) -> bool:
     return bool(path) and os.path.isdir(path) and any(f".{name}-" in f or f".{name}" in f for f in os.listdir(path))
 
 
-def _in_threads(function: Callable, calls: list[tuple]) -> list[Any]:
-    """Call `function` with each tuple of arguments, each in a daemon thread of its own."""
-    results: list[Any] = [None] * len(calls)
+def _in_threads(functions: list[Callable[[], Any]], threads: int) -> list[Any]:
+    """Call the functions in daemon threads, so that an interrupt reaches the main thread at once."""
+    results: list[Any] = [None] * len(functions)
     failures: list[BaseException] = []
+    numbers = iter(range(len(functions)))
+    lock = threading.Lock()
 
-    def work(number: int) -> None:
-        try:
-            results[number] = function(*calls[number])
-        except BaseException as error:
-            failures.append(error)
+    def work() -> None:
+        while not failures:
+            with lock:
+                number = next(numbers, None)
+            if number is None:
+                return
+            try:
+                results[number] = functions[number]()
+            except BaseException as error:
+                failures.append(error)
 
-    workers = [threading.Thread(target=work, args=(n,), daemon=True) for n in range(len(calls))]
+    workers = [threading.Thread(target=work, daemon=True) for _ in range(min(threads, len(functions)))]
     for worker in workers:
         worker.start()
     for worker in workers:

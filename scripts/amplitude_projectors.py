@@ -142,10 +142,10 @@ def labellings(faces, internal, given, up_to):
 
 
 def contract(tensors, keep):
-    """Sum the product of (array, names of its axes) over all names but `keep`."""
+    """Sum the product of (array, names of its axes) over all names but `keep`; intermediate arrays may be large."""
     number = {name: x for x, name in enumerate(dict.fromkeys(n for _, names in tensors for n in names))}
     operands = [x for array, names in tensors for x in (array, [number[n] for n in names])]
-    return np.einsum(*operands, [number[n] for n in keep], optimize="greedy")
+    return np.einsum(*operands, [number[n] for n in keep], optimize=("greedy", 2**30))
 
 
 def amplitude(foam, boundary, fixed=None, up_to=np.inf):

@@ -142,7 +142,7 @@ class Foam:
         for w, direction in enumerate(self.direction[v].tolist()):
             enter, leave = (k + 2 * w, k + 2 * w + 1)[::direction]
             operands += [epsilon(spins[w]), [enter, leave]]
-        return np.einsum(*operands, list(range(k)), optimize="greedy")
+        return np.einsum(*operands, list(range(k)), optimize=("greedy", 2**30))
 
 
 # -- the state sum ---------------------------------------------------------------------------------

@@ -122,7 +122,7 @@ def eliminate(tensors):
         number = {n: x for x, n in enumerate(dict.fromkeys(m for _, row in touched for m in row))}
         left = [n for n in number if n != name]
         operands = [x for array, row in touched for x in (array, [number[n] for n in row])]
-        array = np.einsum(*operands, [number[n] for n in left], optimize="greedy")
+        array = np.einsum(*operands, [number[n] for n in left], optimize=("greedy", 2**30))
         tensors = [t for t in tensors if name not in t[1]] + [(array, left)]
         names.remove(name)
     return float(np.prod([array for array, _ in tensors]))

@@ -283,6 +283,7 @@ def _walk(work: _Work, orientation: np.ndarray, edges: _Edges) -> tuple[list[_Pa
         return rings, chains
 
     # small ranges, taken in order: most walks then find no mark that is still to come
+    run.prepare(walk_ridges)
     blocks = run.ranges(n, 1 if run.threads == 1 else max(run.threads, n // 50_000))
     walked = run.tasks([lambda lo=lo, hi=hi: walk(lo, hi) for lo, hi in blocks])
     return [part for rings, _ in walked for part in rings], [part for _, chains in walked for part in chains]

@@ -43,7 +43,12 @@ class Engine:
 
     def __call__(self, kernel: Callable, *arguments: Any) -> Any:
         """Run one kernel as a whole."""
-        return self.tasks([lambda: self.here(kernel, *arguments)])[0]
+        return self.each(kernel, [arguments])[0]
+
+    def prepare(self, kernel: Callable) -> None:
+        """Import the compiler in this thread, before tasks that call the kernel begin."""
+        if self.compiled:
+            _compile(kernel)
 
     def here(self, kernel: Callable, *arguments: Any) -> Any:
         """Run one kernel in the calling thread (inside a task of `tasks`, say)."""
@@ -57,6 +62,7 @@ class Engine:
 
     def each(self, kernel: Callable, calls: list[tuple]) -> list[Any]:
         """Run a kernel once for every tuple of arguments."""
+        self.prepare(kernel)
         return self.tasks([lambda call=call: self.here(kernel, *call) for call in calls])
 
     def tasks(self, functions: list[Callable[[], Any]]) -> list[Any]:

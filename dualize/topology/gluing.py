@@ -1,0 +1,97 @@
+"""The gluing table read back from a foam skeleton.
+
+An edge of the foam knows the slots at its ends and, at every place, the corners there: that is the gluing of
+one facet.  So a skeleton alone holds the whole triangulation, and everything that is asked of a triangulation
+can be asked of a skeleton.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ..errors import SkeletonError, TriangulationError
+from ..kernels import engine
+from ..kernels.audit import glue_edges
+from ..kernels.permutations import permutations_of
+from ..skeleton import Skeleton
+from ..triangulation import Coordinates, Triangulation
+
+__all__ = ["gluing_of"]
+
+
+def gluing_of(skeleton: Skeleton, *, threads: int | None = None) -> Triangulation:
+    """The triangulation to which a skeleton is dual.
+
+    Its simplices are the vertices of the skeleton, in their order; it is written so that `dualize.build`
+    gives the orientations of the skeleton again, where these follow the rules.
+
+    Parameters
+    ----------
+    skeleton : Skeleton
+        Shapes must be those of the layout; entries need not be trusted.
+    threads : int, optional
+
+    Raises
+    ------
+    SkeletonError
+        If the edges are no gluing of facets: a slot outside the complex, or met twice or never, or corners
+        that are no permutation.
+
+    Examples
+    --------
+    >>> from dualize import Triangulation, build
+    >>> t = Triangulation.from_facets([[0, 1, 2, 3], [1, 2, 3, 4]])
+    >>> gluing_of(build(t)) == t
+    True
+    """
+    s, d = skeleton, skeleton.dimension
+    n, k = s["vertices/edge"].shape
+    tables = permutations_of(d)
+    run = engine(n, threads)
+    across = np.full((n, k), -2, dtype=s["edges/source"].dtype)
+    rank = np.zeros((n, k), dtype=np.uint8)
+    interior, total = s.counts["edges_internal"], len(s["edges/twist"])
+    bad = run(
+        glue_edges,
+        *(s[f"edges/{key}"].ravel() for key in ("source", "target", "source_corner", "target_corner")),
+        tables.ranks,
+        tables.inverse,
+        across.ravel(),
+        rank.ravel(),
+        tuple(range(k)),
+        interior,
+        0,
+        total,
+    )
+    if bad >= 0:
+        raise SkeletonError(
+            "an edge is no gluing of two free facets",
+            f"edge {bad}: source {s['edges/source'][bad].tolist()} at corners "
+            f"{s['edges/source_corner'][bad].tolist()}, target {s['edges/target'][bad].tolist()} at corners "
+            f"{s['edges/target_corner'][bad].tolist()}",
+        )
+    if (across == -2).any():
+        v, i = np.argwhere(across == -2)[0].tolist()
+        raise SkeletonError("no edge ends at a slot", f"vertex {v}, slot {i}")
+    labels = s.arrays.get("vertices/corners")
+    charts = [s.arrays.get(f"coordinates/{key}") for key in ("point", "corner", "period")]
+    return Triangulation(
+        across=across,
+        rank=rank,
+        written=s["vertices/orientation"],
+        corners=labels,
+        corner_names=s.corner_names,
+        coordinates=None if all(c is None for c in charts) else Coordinates(*charts),
+        matched=labels is not None and _matched(labels, across, rank, threads),
+    )
+
+
+def _matched(labels: np.ndarray, across: np.ndarray, rank: np.ndarray, threads: int | None) -> bool:
+    """Whether these gluings are those that matching the labels gives."""
+    if (labels[:, 1:] <= labels[:, :-1]).any():
+        return False
+    try:
+        t = Triangulation.from_facets(labels, threads=threads)
+    except TriangulationError:
+        return False
+    return bool(np.array_equal(t.across, across) and np.array_equal(t.rank, rank))

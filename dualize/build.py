@@ -7,6 +7,7 @@ same on every run and for every number of threads.
 from __future__ import annotations
 
 import os
+from functools import partial
 from typing import NamedTuple
 
 import numpy as np
@@ -204,10 +205,8 @@ def _edges(work: _Work, orientation: np.ndarray) -> _Edges:
     next_edge = next_node = 0
     for (lo, hi), (inner, outer, _) in zip(work.run.ranges(n), counted, strict=False):
         flat = [table.ravel() for table in a.values()]
-        calls.append(
-            (work.across, work.rank, work.image, work.tables.sign, orientation, *flat, work.axes)
-            + (interior, next_edge, next_node, lo, hi)
-        )
+        given = (work.across, work.rank, work.image, work.tables.sign, orientation)
+        calls.append((*given, *flat, work.axes, interior, next_edge, next_node, lo, hi))
         next_edge += inner
         next_node += outer
     work.run.each(fill_edges, calls)
@@ -285,7 +284,7 @@ def _walk(work: _Work, orientation: np.ndarray, edges: _Edges) -> tuple[list[_Pa
     # small ranges, taken in order: most walks then find no mark that is still to come
     run.prepare(walk_ridges)
     blocks = run.ranges(n, 1 if run.threads == 1 else max(run.threads, n // 50_000))
-    walked = run.tasks([lambda lo=lo, hi=hi: walk(lo, hi) for lo, hi in blocks])
+    walked = run.tasks([partial(walk, lo, hi) for lo, hi in blocks])
     return [part for rings, _ in walked for part in rings], [part for _, chains in walked for part in chains]
 
 
@@ -297,7 +296,7 @@ def _faces(work: _Work, orientation: np.ndarray, edges: _Edges) -> _Faces:
     faces = internal + sum(len(part.length) for part in chains)
     visits, steps = n * w, n * w + faces - internal
     total = len(edges.arrays["edges/twist"])
-    a = {
+    a: dict[str, np.ndarray] = {
         "faces/vertex_offsets": np.zeros(faces + 1, dtype=np.int64),
         "faces/edge_offsets": np.zeros(faces + 1, dtype=np.int64),
         "faces/vertex": np.empty(visits, dtype=ids),
@@ -342,9 +341,7 @@ def _faces(work: _Work, orientation: np.ndarray, edges: _Edges) -> _Faces:
     return _Faces(a, internal, holonomy, twists)
 
 
-def _boundary(
-    work: _Work, edges: _Edges, faces: _Faces, ridges: np.ndarray | None
-) -> dict[str, np.ndarray]:
+def _boundary(work: _Work, edges: _Edges, faces: _Faces, ridges: np.ndarray | None) -> dict[str, np.ndarray]:
     """The tables of nodes and links.  A link runs from the node where its face ends to where it starts."""
     arrays, internal = faces.arrays, faces.internal
     vertex, slot = edges.arrays["nodes/vertex"], edges.arrays["nodes/slot"]
@@ -405,7 +402,7 @@ def _singular(
         return None
     singular = np.zeros(len(faces.twists), dtype=np.int8)
     singular[: faces.internal] = faces.holonomy
-    if pinches:
+    if pinches and ridges is not None:
         _, group, size = np.unique(ridges, axis=0, return_inverse=True, return_counts=True)
         singular[size[group.ravel()] > 1] += 2
     if keep_singular:
@@ -477,7 +474,7 @@ def _points(work: _Work) -> dict[str, np.ndarray]:
     """Classes of the triangulation's vertices and 1-simplices, numbered by first occurrence."""
     n, k, w, ids, t = work.n, work.k, work.w, work.ids, work.t
     if t.corners is not None and t.matched:
-        # in a labelled complex a point is a label, and a segment a pair of them, in the same direction everywhere
+        # in a labelled complex a point is a label, and a segment a pair of them with one direction
         point = _first_occurrence(t.corners.reshape(-1, 1)).reshape(n, k)
         ends = point[:, [[i, j] for i, j in work.slots.tolist()]].reshape(-1, 2)
         segment = _first_occurrence(ends).reshape(n, w)

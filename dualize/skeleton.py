@@ -225,8 +225,8 @@ class Skeleton:
     def boundary_graph(self) -> networkx.MultiDiGraph:
         """The nodes and links of the boundary as a directed multigraph.
 
-        Nodes are ``0 .. B - 1`` with ``edge``, ``vertex``, ``slot``, ``orientation``, ``component``, ``links``
-        and ``link_leaves`` (both by place), and ``corners`` where there are labels.  Every link has its
+        Nodes are ``0 .. B - 1`` with ``edge``, ``vertex``, ``slot``, ``orientation``, ``component``,
+        ``links`` and ``link_leaves`` (both by place), and ``corners`` where there are labels.  Every link has its
         number as key and ``link``, ``face``, ``twist``, ``source_place``, ``target_place``, and ``corners``.
         """
         import networkx
@@ -292,7 +292,12 @@ class Skeleton:
         check_skeleton(self)
 
     def write(
-        self, path: str | PathLike[str], *, force: bool = False, kind: str | None = None, compress: bool = False
+        self,
+        path: str | PathLike[str],
+        *,
+        force: bool = False,
+        kind: str | None = None,
+        compress: bool = False,
     ) -> None:
         """Write the skeleton; the suffix (or `kind`: ``json``, ``hdf5``, ``npz``) decides the format.
 
@@ -320,7 +325,11 @@ def same_tables(one: Mapping[str, Any], two: Mapping[str, Any]) -> bool:
         if isinstance(a, np.ndarray) or isinstance(b, np.ndarray):
             if not (isinstance(a, np.ndarray) and isinstance(b, np.ndarray)):
                 return False
-            if a.dtype != b.dtype or a.shape != b.shape or not np.array_equal(a, b, equal_nan=a.dtype.kind == "f"):
+            if (
+                a.dtype != b.dtype
+                or a.shape != b.shape
+                or not np.array_equal(a, b, equal_nan=a.dtype.kind == "f")
+            ):
                 return False
         elif a != b:
             return False

@@ -8,8 +8,9 @@ equal label sets; after that it is nothing special.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
@@ -131,11 +132,7 @@ class Triangulation:
         axes = tuple(range(k))
         corners = np.empty_like(labels)
         written = np.empty(n, dtype=np.int8)
-        bad = [
-            s
-            for s in run.split(sort_rows, n, labels.ravel(), corners.ravel(), written, axes)
-            if s >= 0
-        ]
+        bad = [s for s in run.split(sort_rows, n, labels.ravel(), corners.ravel(), written, axes) if s >= 0]
         if bad:
             row = labels[bad[0]]
             seen: set[int] = set()
@@ -234,7 +231,7 @@ class Triangulation:
 
     @property
     def carry(self) -> np.ndarray:
-        """The carrying permutations in full, int8, shape (N, D + 1, D + 1); -1 in the rows of boundary slots."""
+        """The carrying permutations in full, int8, shape (N, D + 1, D + 1); -1 at boundary slots."""
         images = permutations_of(self.dimension).image[self.rank]
         images[self.across < 0] = -1
         return images
@@ -259,8 +256,7 @@ class Triangulation:
         pairs = [(getattr(self, x), getattr(other, x)) for x in ("across", "rank", "written", "corners")]
         pairs += list(zip(mine, theirs, strict=True))
         return self.corner_names == other.corner_names and all(
-            a is b
-            or (a is not None and b is not None and a.shape == b.shape and bool(np.array_equal(a, b)))
+            a is b or (a is not None and b is not None and a.shape == b.shape and bool(np.array_equal(a, b)))
             for a, b in pairs
         )
 
@@ -360,13 +356,13 @@ def _match(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, np.ndarray]:
     np.cumsum(size, out=start[1:])
     entry = np.empty(n * k, dtype=_id_dtype(n * k))
     run(fill_buckets, flat, bucket, start[:-1].copy(), entry, axes, n)
-    across = np.empty((n, k), dtype=_id_dtype(n))
+    across: np.ndarray = np.empty((n, k), dtype=_id_dtype(n))
     rank = np.empty((n, k), dtype=np.uint8)
     # ranges of buckets with about equal numbers of half-facets
     parts = len(run.ranges(n))
     cuts = [0, *np.searchsorted(start, [n * k * p // parts for p in range(1, parts)]).tolist(), count]
     calls = []
-    for lo, hi in zip(cuts[:-1], cuts[1:], strict=True):
+    for lo, hi in pairwise(cuts):
         room = 2 * int(size[lo:hi].max(initial=0))
         work = (np.empty(room, np.int64), np.empty(room, np.int64), np.empty(room, np.int64))
         keeping = permutations_of(k - 1).keeping.ravel()
@@ -454,7 +450,7 @@ def _check_gluings(across: np.ndarray, carry: np.ndarray) -> np.ndarray:
 
 
 def _check_labels_kept(across: np.ndarray, rank: np.ndarray, labels: np.ndarray) -> None:
-    n, k = across.shape
+    k = across.shape[1]
     images = permutations_of(k - 1).image[rank]
     for i in range(k):
         inner = np.flatnonzero(across[:, i] >= 0)
@@ -494,7 +490,7 @@ def _coordinates(given: Any, labels: np.ndarray, corners: np.ndarray) -> Coordin
             )
     if chart is not None:
         if chart.ndim != 3 or chart.shape[:2] != labels.shape:
-            raise InputError(f"corner coordinates have the shape {chart.shape}, not {(*labels.shape, 'axes')}")
+            raise InputError(f"corner charts have the shape {chart.shape}, not {(*labels.shape, 'axes')}")
         axes = chart.shape[2]
         order = np.argsort(labels, axis=1, kind="stable")
         chart = np.take_along_axis(chart, order[:, :, None], axis=1)

@@ -4,7 +4,10 @@ __all__ = ["join_pairs", "join_points", "join_segments", "number_classes", "numb
 
 
 def join_pairs(one, two, parent):
-    """Join ``one[x]`` and ``two[x]`` for all x; `parent` begins as 0, 1, 2, ... and roots are smallest members."""
+    """Join ``one[x]`` and ``two[x]`` for all x.
+
+    `parent` begins as 0, 1, 2, ...; roots are the smallest members of their classes.
+    """
     for x in range(len(one)):
         a = one[x]
         b = two[x]
@@ -40,7 +43,7 @@ def join_points(across, rank, image, parent, axes, n):
     for s in range(n):
         for i in range(k):
             t = across[s * k + i]
-            if t < s:  # every gluing is seen from both sides; once is enough, and within one simplex twice is harmless
+            if t < s:  # a gluing is seen from both sides, and once is enough
                 continue
             p = rank[s * k + i]
             for c in range(k):

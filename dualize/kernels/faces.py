@@ -306,7 +306,18 @@ def place_faces(
 
 
 def fill_edge_faces(
-    source, target, source_corner, target_corner, pair, wedge_face, wedge_direction, edge_face, edge_sign, axes, lo, hi
+    source,
+    target,
+    source_corner,
+    target_corner,
+    pair,
+    wedge_face,
+    wedge_direction,
+    edge_face,
+    edge_sign,
+    axes,
+    lo,
+    hi,
 ):
     """The face and its sign at every place of the edges `lo` to `hi`, gathered from the wedges."""
     k = len(axes)

@@ -61,7 +61,7 @@ def bucket_sizes(points, degree, bucket, size, axes, n):
 
 
 def fill_buckets(points, bucket, cursor, entry, axes, n):
-    """Write the half-edges ``s * K + i`` into their buckets; `cursor` begins as the offsets of the buckets."""
+    """Write the half-edges ``s * K + i`` into their buckets; `cursor` begins as the buckets' offsets."""
     k = len(axes)
     for s in range(n):
         base = s * k

@@ -1,28 +1,25 @@
 """Is this skeleton whole?  Every entry that the rest of a skeleton determines is compared with the rest.
 
-First what makes the tables safe to read: presence, shapes, widths, the range of every entry by its kind, offsets.
-Then the edges, from which the gluings are read back; components and the spreading of the orientation; the
+First what makes the tables safe to read (`dualize.form`): presence, shapes, widths, ranges, offsets.  Then
+the edges, from which the gluings are read back; components and the spreading of the orientation; the
 faces, followed through the gluings from one visit to the next, so that every signed edge ends where the next
 cell begins and ``d1 d2 = 0`` with nodes and links included; boundary, labels, flags, and the optional groups.
 Nothing is compared with a second build: the rules of ``dualize spec`` are checked one by one.
 
 What a file cannot contradict is not noticed: a consistent renaming of labels, the words behind them,
-coordinates, provenance, and the sign with which the first simplex of a component was written, where every table
-that depends on it agrees.
+coordinates, provenance, and the sign with which the first simplex of a component was written, where every
+table that depends on it agrees.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterable
-from typing import Any
-
 import numpy as np
 
-from .errors import SkeletonError
+from .form import POINTS, check_form, compare, entry, wrong
 from .kernels import checks as rules
 from .kernels import engine
 from .kernels.permutations import permutations_of
-from .layout import COUNTS, FLAGS, TABLES, Table, dtype_of, id_dtype, sizes, wedge_pairs
+from .layout import COUNTS, sizes, wedge_pairs
 from .skeleton import Skeleton
 
 __all__ = ["check_skeleton"]
@@ -30,11 +27,20 @@ __all__ = ["check_skeleton"]
 # The kernels' rules in words: the table they read, and what is wrong with its entry.
 RULES: dict[int, tuple[str, str]] = {
     rules.SOURCE_IS_NODE: ("edges/source", "an internal edge has a vertex at either end"),
-    rules.TARGET_IS_NODE: ("edges/target", "only one end of an external edge is a node, of an internal one none"),
+    rules.TARGET_IS_NODE: (
+        "edges/target",
+        "only one end of an external edge is a node, of an internal one none",
+    ),
     rules.TARGET_IS_SOURCE: ("edges/target", "it is the same slot as the edge's source"),
     rules.TARGET_NOT_NODE: ("edges/target", "one end of an external edge is a node (-1, node)"),
-    rules.SOURCE_NODE: ("edges/source", "the external edges end on the nodes in order, this one on node {wanted}"),
-    rules.TARGET_NODE: ("edges/target", "the external edges end on the nodes in order, this one on node {wanted}"),
+    rules.SOURCE_NODE: (
+        "edges/source",
+        "the external edges end on the nodes in order, this one on node {wanted}",
+    ),
+    rules.TARGET_NODE: (
+        "edges/target",
+        "the external edges end on the nodes in order, this one on node {wanted}",
+    ),
     rules.EDGE_AT_SOURCE: ("vertices/edge", "edges/source says that edge {wanted} starts at this slot"),
     rules.LEAVES_AT_SOURCE: ("vertices/leaves", "edges/source says that an edge starts at this slot"),
     rules.EDGE_AT_TARGET: ("vertices/edge", "edges/target says that edge {wanted} ends at this slot"),
@@ -47,29 +53,47 @@ RULES: dict[int, tuple[str, str]] = {
     rules.TARGET_CORNER_ORDER: ("edges/target_corner", "the corners ascend at an edge's smallest half-edge"),
     rules.TWIST: ("edges/twist", "the orientations of its vertices and its corners make it {wanted}"),
     rules.SOURCE_ARRIVES: ("edges/source", "by the orientation of the vertex the edge arrives there"),
-    rules.TWISTED_SOURCE: ("edges/source", "a twisted edge starts at its smallest half-edge, at vertex {wanted}"),
+    rules.TWISTED_SOURCE: (
+        "edges/source",
+        "a twisted edge starts at its smallest half-edge, at vertex {wanted}",
+    ),
     rules.TARGET_LEAVES: ("edges/target", "by the orientation of the vertex the edge leaves there"),
     rules.FACE_VERTEX: ("faces/vertex", "the edge before leads to vertex {wanted}"),
     rules.FACE_WEDGE: ("faces/wedge", "the face comes here through wedge {wanted}"),
     rules.WEDGE_DIRECTION: ("wedges/direction", "the face comes through the wedge the other way"),
     rules.WEDGE_FACE: ("wedges/face", "faces/vertex and faces/wedge give this wedge to face {wanted}"),
-    rules.FACE_START: ("faces/vertex", "an external face begins at the boundary, and here it enters by an internal edge"),
+    rules.FACE_START: (
+        "faces/vertex",
+        "an external face begins at the boundary, and here it enters by an internal edge",
+    ),
     rules.FACE_EDGE: ("faces/edge", "the face passes here through edge {wanted}"),
     rules.FACE_EDGE_SIGN: ("faces/edge_sign", "the face passes the edge with sign {wanted}"),
-    rules.FACE_PLACE: ("faces/place", "the face passes the edge at the place of the vertex's corner {wanted}"),
+    rules.FACE_PLACE: (
+        "faces/place",
+        "the face passes the edge at the place of the vertex's corner {wanted}",
+    ),
     rules.EDGE_FACE: ("edges/face", "faces/edge and faces/place put face {wanted} there"),
     rules.EDGE_FACE_SIGN: ("edges/face_sign", "the face passes the edge with sign {wanted}"),
-    rules.FACE_ENDS_INSIDE: ("faces/vertex", "the face leaves this vertex by an external edge, and its list goes on"),
-    rules.FACE_GOES_ON: ("faces/vertex", "the face leaves this vertex by an internal edge, and its list ends"),
-    rules.FACE_NOT_FIRST: ("faces/vertex", "an internal face begins at its smallest wedge, and meets it once"),
-    rules.DIRECTION_RULE: ("wedges/direction", "at a face's smallest wedge the orientation makes it {wanted}"),
-    rules.AGAINST: ("faces/against", "the face runs against {wanted} internal edges, mod 2"),
+    rules.FACE_ENDS_INSIDE: (
+        "faces/vertex",
+        "the face leaves this vertex by an external edge, and its list goes on",
+    ),
+    rules.FACE_GOES_ON: (
+        "faces/vertex",
+        "the face leaves this vertex by an internal edge, and its list ends",
+    ),
+    rules.FACE_NOT_FIRST: (
+        "faces/vertex",
+        "an internal face begins at its smallest wedge, and meets it once",
+    ),
+    rules.DIRECTION_RULE: (
+        "wedges/direction",
+        "at a face's smallest wedge the orientation makes it {wanted}",
+    ),
+    rules.AGAINST: ("faces/against", "the face runs against {wanted} internal edges mod 2"),
     rules.TARGET_LABEL: ("vertices/corners", "an edge carries this corner to one with label {wanted}"),
     rules.NODE_LABEL: ("nodes/corners", "the corner at the vertex has label {wanted}"),
 }
-
-LABELS = ("vertices/corners", "nodes/corners", "links/corners")
-POINTS = ("vertices/point", "vertices/segment", "vertices/segment_sign")
 
 
 def check_skeleton(skeleton: Skeleton, *, threads: int | None = None) -> None:
@@ -88,8 +112,8 @@ def check_skeleton(skeleton: Skeleton, *, threads: int | None = None) -> None:
 
     Notes
     -----
-    Takes time in proportion to the size of the tables.  No entry is used as an index before its range is known,
-    and nothing is allocated that is larger than the tables themselves.
+    Takes time in proportion to the size of the tables.  No entry is used as an index before its range is
+    known, and nothing is allocated that is larger than the tables themselves.
 
     Examples
     --------
@@ -102,12 +126,9 @@ def check_skeleton(skeleton: Skeleton, *, threads: int | None = None) -> None:
     >>> check_skeleton(broken)
     Traceback (most recent call last):
     ...
-    dualize.errors.SkeletonError: it is 1, but the face runs against 0 internal edges, mod 2 (faces/against[0])
+    dualize.errors.SkeletonError: it is 1, but the face runs against 0 internal edges mod 2 (faces/against[0])
     """
-    _check_header(skeleton)
-    _check_tables(skeleton)
-    _check_ranges(skeleton)
-    _check_offsets(skeleton)
+    check_form(skeleton)
     work = _Work(skeleton, threads)
     _check_edges(work)
     _check_components(work)
@@ -116,212 +137,6 @@ def check_skeleton(skeleton: Skeleton, *, threads: int | None = None) -> None:
     _check_labels(work)
     _check_singular(work)
     _check_points(work)
-
-
-def _wrong(what: str, where: str) -> SkeletonError:
-    return SkeletonError(what, where, "the file is damaged, or was not written by the rules of `dualize spec`")
-
-
-def _entry(skeleton: Skeleton, name: str, flat: int, why: str) -> SkeletonError:
-    """The error that names an entry of a table by its index and value."""
-    table = skeleton[name]
-    index = ", ".join(str(int(x)) for x in np.unravel_index(flat, table.shape))
-    return _wrong(f"it is {table.ravel()[flat]}, but {why}", f"{name}[{index}]")
-
-
-def _compare(skeleton: Skeleton, name: str, wanted: np.ndarray, why: str) -> None:
-    """Raise for the first entry of a table that differs from `wanted`."""
-    differ = skeleton[name] != wanted
-    if differ.any():
-        flat = int(np.argmax(differ))
-        raise _entry(skeleton, name, flat, why.format(wanted=np.broadcast_to(wanted, differ.shape).ravel()[flat]))
-
-
-# -- what makes the tables safe to read ------------------------------------------------------------
-
-
-def _check_header(skeleton: Skeleton) -> None:
-    d, counts, flags = skeleton.dimension, skeleton.counts, skeleton.flags
-    if not _is_integer(d) or d not in (2, 3, 4):
-        raise _wrong(f"it is {d!r}, but a triangulation has dimension 2, 3 or 4", "dimension")
-    for kind, mapping, keys in (("counts", counts, COUNTS), ("flags", flags, FLAGS)):
-        if absent := [key for key in keys if key not in mapping]:
-            raise _wrong("it is missing", f"{kind}/{absent[0]}")
-        if unknown := sorted(str(key) for key in mapping if key not in keys):
-            raise _wrong(f"this version knows no such entry of {kind}", f"{kind}/{unknown[0]}")
-    for key in COUNTS:
-        if not _is_integer(counts[key]) or counts[key] < 0:
-            raise _wrong(f"it is {counts[key]!r}, but a count is an integer from 0", f"counts/{key}")
-    v, nodes, links = counts["vertices"], counts["nodes"], counts["links"]
-    relations = [
-        ("vertices", v >= 1, "there is at least one vertex"),
-        ("edges_external", counts["edges_external"] == nodes, f"there are {nodes} nodes, one at each external edge"),
-        ("faces_external", counts["faces_external"] == links, f"there are {links} links, one in each external face"),
-        (
-            "edges_internal",
-            2 * counts["edges_internal"] + nodes == v * (d + 1),
-            f"{v} vertices with {d + 1} slots each have {v * (d + 1)} ends of edges, {nodes} of them external",
-        ),
-        ("links", 2 * links == nodes * d, f"{nodes} nodes with {d} places each have {nodes * d} ends of links"),
-        ("components", 1 <= counts["components"] <= v, f"there are {v} vertices"),
-    ]
-    for key, holds, why in relations:
-        if not holds:
-            raise _wrong(f"it is {counts[key]}, but {why}", f"counts/{key}")
-    for key in ("ordered", "singular"):
-        if not _is_truth(flags[key]):
-            raise _wrong(f"it is {flags[key]!r}, not true or false", f"flags/{key}")
-    orientable = flags["orientable"]
-    if not isinstance(orientable, list | tuple) or not all(map(_is_truth, orientable)):
-        raise _wrong("it is no list of true and false", "flags/orientable")
-    if len(orientable) != counts["components"]:
-        raise _wrong(f"it has {len(orientable)} entries for {counts['components']} components", "flags/orientable")
-    names = skeleton.corner_names
-    if names is not None:
-        if not isinstance(names, list | tuple) or not all(isinstance(word, str) for word in names):
-            raise _wrong("it is no list of words", "corner_names")
-        for x in range(1, len(names)):
-            if names[x - 1] >= names[x]:
-                raise _wrong(f"it is {names[x]!r}, but words ascend, each once", f"corner_names[{x}]")
-
-
-def _is_integer(value: Any) -> bool:
-    return isinstance(value, int | np.integer) and not isinstance(value, bool)
-
-
-def _is_truth(value: Any) -> bool:
-    return isinstance(value, bool | np.bool_)
-
-
-def _check_tables(skeleton: Skeleton) -> None:
-    """Presence, shapes and widths."""
-    _check_presence(skeleton)
-    counts = {key: int(skeleton.counts[key]) for key in COUNTS}
-    letters = sizes(int(skeleton.dimension), counts)
-    ids = id_dtype(counts)
-    for name, table in TABLES.items():
-        if name not in skeleton:
-            continue
-        array = skeleton[name]
-        shape = tuple(x if isinstance(x, int) else letters.get(x, -1) for x in table.shape)
-        if array.ndim == len(shape):  # the number of points and of axes is free, but one for all
-            for letter, have in zip(table.shape, array.shape, strict=True):
-                if letter in ("P", "A"):
-                    letters.setdefault(letter, have)
-            shape = tuple(x if isinstance(x, int) else letters[x] for x in table.shape)
-        if array.shape != shape:
-            written = ", ".join("any" if x < 0 else str(x) for x in shape)
-            raise _wrong(f"its shape is {array.shape}, but the counts and the layout ask for ({written})", name)
-        if array.dtype != dtype_of(table, ids):
-            raise _wrong(f"its entries are {array.dtype}, but {dtype_of(table, ids)} in this layout", name)
-
-
-def _check_presence(skeleton: Skeleton) -> None:
-    have = set(skeleton.arrays)
-    if unknown := sorted(have - TABLES.keys()):
-        raise _wrong("the layout has no such table; further groups are kept apart from it", unknown[0])
-    if twice := sorted(TABLES.keys() & set(skeleton.extra)):
-        raise _wrong("a further group has the name of a table of the layout", twice[0])
-
-    def together(names: Iterable[str], wanted: bool, yes: str, no: str) -> None:
-        for name in names:
-            if wanted and name not in have:
-                raise _wrong(f"the table is missing, though {yes}", name)
-            if not wanted and name in have:
-                raise _wrong(f"the table is there, though {no}", name)
-
-    always = [t.name for t in TABLES.values() if t.presence == "always"]
-    together(always, True, "every skeleton has it", "")
-    together(LABELS, any(name in have for name in LABELS), "there are labels", "")
-    together(POINTS, any(name in have for name in POINTS), "there are points or segments", "")
-    together(
-        ["faces/singular"],
-        bool(skeleton.flags["singular"]),
-        "flags/singular is true",
-        "flags/singular is false",
-    )
-    if "coordinates/period" in have and not {"coordinates/point", "coordinates/corner"} & have:
-        raise _wrong("there is a period and there are no coordinates", "coordinates/period")
-    if skeleton.corner_names is not None and "vertices/corners" not in have:
-        raise _wrong("there are words for labels and there are no labels", "corner_names")
-
-
-def _check_ranges(skeleton: Skeleton) -> None:
-    """The range of every entry by the kind of its table."""
-    d = int(skeleton.dimension)
-    size = sizes(d, dict(skeleton.counts))
-    names = skeleton.corner_names
-    limits = {
-        "vertex": (0, size["V"] - 1),
-        "edge": (0, size["E"] - 1),
-        "face": (0, size["F"] - 1),
-        "node": (0, size["B"] - 1),
-        "link": (0, size["L"] - 1),
-        "component": (0, skeleton.counts["components"] - 1),
-        "boundary": (0, size["B"] - 1),
-        "point": (0, size["V"] * size["K"] - 1),
-        "segment": (0, size["V"] * size["W"] - 1),
-        "segment_sign": (-1, 1),
-        "sign": (-1, 1),
-        "bit": (0, 1),
-        "singular": (0, 3),
-        "corner": (-1, d),
-        "slot": (0, d),
-        "place": (0, d - 1),
-        "wedge": (0, size["W"] - 1),
-    }
-    if names is not None:
-        limits["label"] = (0, len(names) - 1)
-    for name, table in TABLES.items():
-        if name not in skeleton or not skeleton[name].size:
-            continue
-        if table.kind == "end":
-            _check_ends(skeleton, name, size)
-        elif table.kind in limits:
-            _check_limits(skeleton, table, *limits[table.kind])
-
-
-def _check_limits(skeleton: Skeleton, table: Table, low: int, high: int) -> None:
-    array: np.ndarray = skeleton[table.name].ravel()
-    if array.min() < low or array.max() > high:
-        flat = int(np.argmax((array < low) | (array > high)))
-        raise _entry(skeleton, table.name, flat, f"a {table.kind.replace('_', ' ')} is from {low} to {high}")
-    if table.kind == "sign" and not array.all():
-        raise _entry(skeleton, table.name, int(np.argmin(array != 0)), "a sign is +1 or -1")
-
-
-def _check_ends(skeleton: Skeleton, name: str, size: dict[str, int]) -> None:
-    """The rows of edge ends: ``(vertex, slot)`` or ``(-1, node)``."""
-    vertex, second = skeleton[name].T
-    if vertex.min() < -1 or vertex.max() >= size["V"]:
-        row = int(np.argmax((vertex < -1) | (vertex >= size["V"])))
-        raise _entry(skeleton, name, 2 * row, f"a vertex is from 0 to {size['V'] - 1}; -1 stands for a node")
-    wrong = (second < 0) | (second > np.where(vertex < 0, size["B"] - 1, size["D"]))
-    if wrong.any():
-        row = int(np.argmax(wrong))
-        kind, high = ("node", size["B"] - 1) if vertex[row] < 0 else ("slot", size["D"])
-        why = f"a {kind} is from 0 to {high}" if high >= 0 else f"there is no {kind}"
-        raise _entry(skeleton, name, 2 * row + 1, why)
-
-
-def _check_offsets(skeleton: Skeleton) -> None:
-    vertex = skeleton["faces/vertex_offsets"]
-    for name, ends in (("faces/vertex_offsets", skeleton["faces/vertex"]), ("faces/edge_offsets", skeleton["faces/edge"])):
-        offsets = skeleton[name]
-        if offsets[0] != 0:
-            raise _entry(skeleton, name, 0, "offsets start at 0")
-        if (fall := offsets[1:] <= offsets[:-1]).any():
-            raise _entry(skeleton, name, int(np.argmax(fall)) + 1, "offsets grow: no face is empty")
-        if offsets[-1] != len(ends):
-            raise _entry(skeleton, name, len(offsets) - 1, f"offsets end at the number of visits, {len(ends)}")
-    internal = int(skeleton.counts["faces_internal"])
-    wanted = vertex + np.maximum(np.arange(len(vertex)) - internal, 0)
-    _compare(
-        skeleton,
-        "faces/edge_offsets",
-        wanted,
-        "it must be {wanted}: an internal face has as many edges as vertices, an external one more",
-    )
 
 
 # -- the tables against each other -----------------------------------------------------------------
@@ -366,7 +181,7 @@ class _Work:
         for rule, index, wanted in verdicts:
             if rule:
                 name, why = RULES[rule]
-                raise _entry(self.skeleton, name, index, why.format(wanted=wanted))
+                raise entry(self.skeleton, name, index, why.format(wanted=wanted))
 
 
 def _check_edges(work: _Work) -> None:
@@ -378,7 +193,9 @@ def _check_edges(work: _Work) -> None:
     verdicts = work.run.split(
         rules.check_edges,
         size["E"],
-        *work.flat("edges/source", "edges/target", "edges/source_corner", "edges/target_corner", "edges/twist"),
+        *work.flat(
+            "edges/source", "edges/target", "edges/source_corner", "edges/target_corner", "edges/twist"
+        ),
         *work.flat("vertices/edge", "vertices/leaves", "vertices/orientation"),
         work.tables.ranks,
         k ** np.arange(k - 1, -1, -1),
@@ -395,42 +212,46 @@ def _check_edges(work: _Work) -> None:
             e = first + 1 + int(np.argmax(fall))
             s, i = divmod(int(smallest[e]), k)
             end = "source" if tuple(work["edges/source"][e]) == (s, i) else "target"
-            why = f"{kind} edges are numbered by their smallest half-edges, and the edge before has a larger one"
-            raise _entry(work.skeleton, f"edges/{end}", 2 * e, why)
+            why = f"{kind} edges are numbered by smallest half-edges, and the one before has a larger"
+            raise entry(work.skeleton, f"edges/{end}", 2 * e, why)
     ordered = not scrambled.any()
     if bool(work.skeleton.flags["ordered"]) != ordered:
         e = int(np.argmax(scrambled))
-        why = "the corners ascend at both ends of every edge" if ordered else f"the corners of edge {e} do not ascend"
-        raise _wrong(f"it is {not ordered}, but {why}", "flags/ordered")
+        why = (
+            "the corners ascend at both ends of every edge"
+            if ordered
+            else f"the corners of edge {e} do not ascend"
+        )
+        raise wrong(f"it is {not ordered}, but {why}", "flags/ordered")
 
 
 def _check_components(work: _Work) -> None:
-    """Components, and that the orientation was spread breadth first: the edges by which it went have no twist."""
+    """Components, and that the orientation was spread breadth first: the edges it went over have no twist."""
     v = work.size["V"]
     component, via = np.full(v, -1, dtype=work.ids), np.empty(v, dtype=work.ids)
     queue = np.empty(v, dtype=work.ids)
     parts = work.run(rules.breadth_first, work.across, component, via, queue, work.axes)
-    _compare(
+    compare(
         work.skeleton,
         "vertices/component",
         component,
         "the edges put this vertex into component {wanted}, counted by smallest vertices",
     )
     if parts != work.counts["components"]:
-        raise _wrong(f"it is {work.counts['components']}, but the edges make it {parts}", "counts/components")
-    twist = work["edges/twist"]
+        raise wrong(f"it is {work.counts['components']}, but the edges make it {parts}", "counts/components")
+    twist: np.ndarray = work["edges/twist"]
     tree = work["vertices/edge"].ravel()[via[via >= 0]]
     if twist[tree].any():
         e = int(tree[twist[tree] != 0].min())
-        why = "the orientation is spread over this edge, breadth first from the smallest vertex of its component"
-        raise _entry(work.skeleton, "edges/twist", e, why)
+        why = "the orientation is spread over this edge, breadth first from the component's smallest vertex"
+        raise entry(work.skeleton, "edges/twist", e, why)
     orientable = np.ones(parts, dtype=bool)
     twisted = np.flatnonzero(twist[: work.interior])
     orientable[component[work["edges/source"][twisted, 0]]] = False
     for part, (have, holds) in enumerate(zip(work.skeleton.flags["orientable"], orientable, strict=True)):
         if bool(have) != holds:
             why = "has no twisted edge" if holds else "has a twisted edge"
-            raise _wrong(f"it is {bool(have)}, but the component {why}", f"flags/orientable[{part}]")
+            raise wrong(f"it is {bool(have)}, but the component {why}", f"flags/orientable[{part}]")
 
 
 def _check_faces(work: _Work) -> None:
@@ -463,8 +284,8 @@ def _check_faces(work: _Work) -> None:
     for first, last, kind in ((0, work.internal, "internal"), (work.internal, faces, "external")):
         if (fall := np.diff(smallest[first:last]) < 0).any():
             f = first + 1 + int(np.argmax(fall))
-            why = f"{kind} faces are numbered by their smallest wedges, and face {f - 1} before has a larger one"
-            raise _entry(work.skeleton, "faces/vertex", int(work["faces/vertex_offsets"][f]), why)
+            why = f"{kind} faces are numbered by smallest wedges, and the face before has a larger one"
+            raise entry(work.skeleton, "faces/vertex", int(work["faces/vertex_offsets"][f]), why)
 
 
 def _check_boundary(work: _Work) -> None:
@@ -474,30 +295,51 @@ def _check_boundary(work: _Work) -> None:
     source, target = work["edges/source"][inner:], work["edges/target"][inner:]
     leaving = source[:, 0] >= 0
     half = np.where(leaving[:, None], source, target)
-    _compare(s, "nodes/edge", inner + np.arange(nodes), "the external edges come in the order of the nodes: {wanted}")
-    _compare(s, "nodes/vertex", half[:, 0], "the external edge there starts or ends at vertex {wanted}")
-    _compare(s, "nodes/slot", half[:, 1], "the external edge there starts or ends at slot {wanted}")
-    _compare(s, "nodes/orientation", np.where(leaving, 1, -1), "the direction of the external edge makes it {wanted}")
+    compare(
+        s,
+        "nodes/edge",
+        inner + np.arange(nodes),
+        "the external edges come in the order of the nodes: {wanted}",
+    )
+    compare(s, "nodes/vertex", half[:, 0], "the external edge there starts or ends at vertex {wanted}")
+    compare(s, "nodes/slot", half[:, 1], "the external edge there starts or ends at slot {wanted}")
+    compare(
+        s,
+        "nodes/orientation",
+        np.where(leaving, 1, -1),
+        "the direction of the external edge makes it {wanted}",
+    )
 
     offsets = work["faces/edge_offsets"]
     first, last = offsets[internal:-1], offsets[internal + 1 :] - 1
     start, end = work["faces/edge"][first] - inner, work["faces/edge"][last] - inner
-    _compare(s, "links/source", end, "the external face ends at node {wanted}, and there its link starts")
-    _compare(s, "links/target", start, "the external face starts at node {wanted}, and there its link ends")
-    _compare(s, "links/face", internal + np.arange(links), "the external faces come in the order of the links: {wanted}")
-    _compare(s, "links/twist", work.edge_twists[internal:], "the twists along the external face add up to {wanted}")
+    compare(s, "links/source", end, "the external face ends at node {wanted}, and there its link starts")
+    compare(s, "links/target", start, "the external face starts at node {wanted}, and there its link ends")
+    compare(
+        s,
+        "links/face",
+        internal + np.arange(links),
+        "the external faces come in the order of the links: {wanted}",
+    )
+    compare(
+        s, "links/twist", work.edge_twists[internal:], "the twists along the external face add up to {wanted}"
+    )
     link, leaves = np.full((nodes, work.d), -1), np.zeros((nodes, work.d), dtype=np.int8)
     # the visits of external edges are as many as places at nodes, and no two at one place (`check_faces`)
     for node, visit, sign in ((end, last, 1), (start, first, -1)):
         link[node, work["faces/place"][visit]] = np.arange(links)
         leaves[node, work["faces/place"][visit]] = sign
-    _compare(s, "nodes/link", link, "the external face at this place has link {wanted}")
-    _compare(s, "nodes/link_leaves", leaves, "the link at this place starts (+1) or ends (-1) there: {wanted}")
+    compare(s, "nodes/link", link, "the external face at this place has link {wanted}")
+    compare(s, "nodes/link_leaves", leaves, "the link at this place starts (+1) or ends (-1) there: {wanted}")
 
     neighbour = np.where(leaves > 0, start[link], end[link]).astype(work.ids, copy=False)
-    component, via, queue = np.full(nodes, -1, dtype=work.ids), np.empty(nodes, work.ids), np.empty(nodes, work.ids)
+    component, via, queue = (
+        np.full(nodes, -1, dtype=work.ids),
+        np.empty(nodes, work.ids),
+        np.empty(nodes, work.ids),
+    )
     work.run(rules.breadth_first, neighbour.ravel(), component, via, queue, tuple(range(work.d)))
-    _compare(
+    compare(
         s,
         "nodes/component",
         component,
@@ -518,17 +360,19 @@ def _check_labels(work: _Work) -> None:
     )
     work.judge(verdicts)
     wanted = np.sort(_ridges(work, work.internal), axis=1)
-    _compare(work.skeleton, "links/corners", wanted, "the labels of the ridge, ascending, have {wanted} there")
+    compare(work.skeleton, "links/corners", wanted, "the labels of the ridge, ascending, have {wanted} there")
     if "coordinates/point" in work.skeleton:
         labels: np.ndarray = work["vertices/corners"]
         rows = len(work["coordinates/point"])
         if labels.min() < 0 or labels.max() >= rows:
             flat = int(np.argmax((labels < 0) | (labels >= rows)))
-            raise _entry(work.skeleton, "vertices/corners", flat, f"coordinates/point has {rows} rows, one per label")
+            raise entry(
+                work.skeleton, "vertices/corners", flat, f"coordinates/point has {rows} rows, one per label"
+            )
 
 
 def _ridges(work: _Work, first_face: int) -> np.ndarray:
-    """Labels of the ridges of the faces from `first_face` on, shape (faces, D - 1), in the order of the corners."""
+    """Labels of the ridges of the faces from `first_face` on, in the order of the corners, (faces, D - 1)."""
     visit = work["faces/vertex_offsets"][first_face:-1]
     others = np.array([[c for c in work.axes if c not in pair] for pair in work.slots.tolist()])
     corners = work["vertices/corners"][work["faces/vertex"][visit]]
@@ -544,7 +388,7 @@ def _check_singular(work: _Work) -> None:
     if not s.flags["singular"]:
         if work.holonomy.any():
             face = int(np.argmax(work.holonomy))
-            raise _wrong(f"it is False, but face {face} has a holonomy", "flags/singular")
+            raise wrong(f"it is False, but face {face} has a holonomy", "flags/singular")
         return
     pinched = work["faces/singular"] & 2
     repeated = np.zeros(work.size["F"], dtype=bool)
@@ -553,9 +397,11 @@ def _check_singular(work: _Work) -> None:
         repeated = _repeated(np.sort(_ridges(work, 0), axis=1))
         twins = bool(_repeated(np.sort(work["vertices/corners"], axis=1)).any())
     wanted = work.holonomy + 2 * (repeated if pinched.any() else np.zeros_like(repeated))
-    _compare(s, "faces/singular", wanted, "the gluings and the labels of the ridges make it {wanted}")
+    compare(s, "faces/singular", wanted, "the gluings and the labels of the ridges make it {wanted}")
     if not wanted.any() and not twins:
-        raise _wrong("it is True, but no face is singular and no two vertices have the same labels", "flags/singular")
+        raise wrong(
+            "it is True, but no face is singular and no two vertices have the same labels", "flags/singular"
+        )
 
 
 def _repeated(rows: np.ndarray) -> np.ndarray:
@@ -583,12 +429,12 @@ def _check_points(work: _Work) -> None:
         why = "the gluings make it {wanted}, numbered by first occurrence"
         if name == "vertices/segment_sign":
             why = "the gluings make it {wanted} against the first segment of its class"
-        _compare(s, name, wanted, why)
+        compare(s, name, wanted, why)
     if "coordinates/point" in s and "vertices/corners" not in s:
         rows = len(work["coordinates/point"])
         if (missing := work["vertices/point"] >= rows).any():
             why = f"coordinates/point has {rows} rows, one per class of points"
-            raise _entry(s, "vertices/point", int(np.argmax(missing)), why)
+            raise entry(s, "vertices/point", int(np.argmax(missing)), why)
 
 
 def _named_points(work: _Work) -> dict[str, np.ndarray]:

@@ -244,8 +244,8 @@ def check_faces(
     and `holonomy` with 1 where an internal face comes back permuted (looked for where `ordered` is 0).
 
     A passage has one successor and one predecessor, and a wedge one face and one direction.  A closed list
-    that meets its first wedge once and a list between two boundary facets therefore meet no wedge twice, and as
-    there are as many visits as wedges, every wedge is visited.
+    that meets its first wedge once and a list between two boundary facets therefore meet no wedge twice, and
+    as there are as many visits as wedges, every wedge is visited.
     """
     k = len(axes)
     d = k - 1
@@ -443,9 +443,9 @@ def spread_points(across, rank, image, number, queue, axes):
 def spread_segments(across, rank, image, pair, slots, number, reached, queue, axes):
     """Classes of the segments ``s * W + w`` under the gluings, numbered by first occurrence.
 
-    Directed segments ``2 x + (0 up, 1 down)`` are followed from the first of each class, upwards (from lower to
-    higher corner); `queue` has room for two of each segment.  `number` must be -1 and `reached` 0 at the start;
-    bit 0 of ``reached[x]`` becomes 1 where x is reached upwards, bit 1 where downwards.
+    Directed segments ``2 x + (0 up, 1 down)`` are followed from the first of each class, upwards (from lower
+    to higher corner); `queue` has room for two of each segment.  `number` must be -1 and `reached` 0 at the
+    start; bit 0 of ``reached[x]`` becomes 1 where x is reached upwards, bit 1 where downwards.
     """
     k = len(axes)
     w_count = k * (k - 1) // 2

@@ -226,8 +226,9 @@ class Skeleton:
         """The nodes and links of the boundary as a directed multigraph.
 
         Nodes are ``0 .. B - 1`` with ``edge``, ``vertex``, ``slot``, ``orientation``, ``component``,
-        ``links`` and ``link_leaves`` (both by place), and ``corners`` where there are labels.  Every link has its
-        number as key and ``link``, ``face``, ``twist``, ``source_place``, ``target_place``, and ``corners``.
+        ``links`` and ``link_leaves`` (both by place), and ``corners`` where there are labels.  Every link
+        has its number as key and ``link``, ``face``, ``twist``, ``source_place``, ``target_place``, and
+        ``corners``.
         """
         import networkx
 

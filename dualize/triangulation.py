@@ -8,6 +8,7 @@ equal label sets; after that it is nothing special.
 
 from __future__ import annotations
 
+import os
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
@@ -17,7 +18,7 @@ import numpy as np
 
 from .errors import InputError, LimitError, TriangulationError
 from .kernels import Engine, engine
-from .kernels.labels import bucket_sizes, fill_buckets, match_buckets, sort_rows
+from .kernels.labels import bucket_sizes, fill_buckets, match_buckets, number_labels, sort_rows
 from .kernels.permutations import permutations_of
 
 if TYPE_CHECKING:
@@ -48,7 +49,10 @@ class Coordinates(NamedTuple):
 
 @dataclass(frozen=True, eq=False, repr=False)
 class Triangulation:
-    """A triangulation of dimension D as a gluing table; make it with `from_facets` or `from_gluings`.
+    """A triangulation of dimension D as a gluing table.
+
+    Make it with `from_facets` (labels), `from_gluings` (a table), or `from_neighbours` (labels and
+    neighbours); `dualize.coloured` makes it of coloured graphs.
 
     Attributes
     ----------
@@ -65,6 +69,8 @@ class Triangulation:
     coordinates : Coordinates, or None
     matched : bool
         Whether the gluings were found by matching labels, so that a set of labels names one simplex.
+    coloured : bool
+        Whether it was given as a coloured graph: corner `c` has colour `c`, and every gluing keeps colours.
     """
 
     across: np.ndarray
@@ -74,6 +80,7 @@ class Triangulation:
     corner_names: tuple[str, ...] | None = None
     coordinates: Coordinates | None = None
     matched: bool = False
+    coloured: bool = False
 
     def __post_init__(self) -> None:
         for name in ("across", "rank", "written", "corners"):
@@ -165,6 +172,8 @@ class Triangulation:
         corners: np.ndarray | Sequence[Sequence[int]] | None = None,
         corner_names: Sequence[str] | None = None,
         coordinates: Coordinates | None = None,
+        matched: bool = False,
+        coloured: bool = False,
     ) -> Triangulation:
         """The triangulation with this gluing table.
 
@@ -180,12 +189,17 @@ class Triangulation:
         corners : array_like of int, shape (N, D + 1), optional
             Labels; gluings must carry equal labels to each other.
         corner_names, coordinates : optional
+        matched : bool
+            Say that these are the gluings that matching the labels gives, the corners in ascending order; it
+            is checked.  Then a set of labels names one simplex, as in a list of facets.
+        coloured : bool
+            Say that corner `c` has colour `c`, and every gluing keeps colours; it is checked.
 
         Raises
         ------
         InputError
             Naming the first wrong row: range, no permutation, inverse missing or different, a facet glued
-            to itself, labels that a gluing does not keep.
+            to itself, labels or colours that a gluing does not keep.
         """
         table = _integers(across, "across", 2)
         n, k = table.shape
@@ -209,12 +223,70 @@ class Triangulation:
             if labels.shape != (n, k):
                 raise InputError(f"corners has the shape {labels.shape}, not {(n, k)} as across asks for")
             _check_labels_kept(table, rank, labels)
+        if coloured:
+            _check_colours_kept(table, rank)
+        if matched:
+            _check_matched(table, rank, labels)
         return cls(
             across=table.astype(_id_dtype(n)),
             rank=rank,
             written=signs,
             corners=labels,
             corner_names=None if corner_names is None else tuple(corner_names),
+            coordinates=coordinates,
+            matched=matched,
+            coloured=coloured,
+        )
+
+    @classmethod
+    def from_neighbours(
+        cls,
+        corners: np.ndarray | Sequence[Sequence[int]] | Sequence[Sequence[str]],
+        across: np.ndarray | Sequence[Sequence[int]],
+        *,
+        written: np.ndarray | Sequence[int] | None = None,
+        corner_names: Sequence[str] | None = None,
+        coordinates: Coordinates | None = None,
+    ) -> Triangulation:
+        """The triangulation of labelled simplices and their neighbours, as lattice simulations store it.
+
+        Two simplices may share several facets, or have the same labels, and a simplex may have a label twice:
+        the neighbours say what is glued to what, the labels of the shared facet how.
+
+        Parameters
+        ----------
+        corners : array_like of int or str, shape (N, D + 1)
+            Labels of the corners; their order is kept.
+        across : array_like of int, shape (N, D + 1)
+            The simplex opposite each corner, -1 on the boundary.
+        written, corner_names, coordinates : see `from_gluings`
+
+        Raises
+        ------
+        InputError
+            Naming the first slot whose gluing the labels do not determine (a label twice on a facet, two
+            slots that would do) or contradict (the simplex across has no such facet, or does not lead back).
+
+        Examples
+        --------
+        The boundary of a tetrahedron: triangle `s` lacks label `s`.
+
+        >>> rows = [[1, 2, 3], [0, 2, 3], [0, 1, 3], [0, 1, 2]]
+        >>> t = Triangulation.from_neighbours(rows, rows)
+        >>> t.carry[0].tolist()
+        [[0, 1, 2], [1, 0, 2], [1, 2, 0]]
+        """
+        labels, names = _labels(corners)
+        table = _integers(across, "across", 2)
+        if table.shape != labels.shape:
+            raise InputError(f"across has the shape {table.shape}, not {labels.shape} as the labels ask for")
+        names = names if corner_names is None else tuple(corner_names)
+        return cls.from_gluings(
+            table,
+            _carry_labels(labels, table, names),
+            written=written,
+            corners=labels,
+            corner_names=names,
             coordinates=coordinates,
         )
 
@@ -236,6 +308,25 @@ class Triangulation:
         images[self.across < 0] = -1
         return images
 
+    def boundary(self, component: int | None = None, *, threads: int | None = None) -> Triangulation:
+        """The boundary, or one component of it, with the induced orientation; see `dualize.boundary`.
+
+        Raises
+        ------
+        TriangulationError
+            If there is no boundary.
+        InputError
+            In dimension 2, where it is a set of circles, or if there is no such component.
+        """
+        from .boundary import boundary_of
+
+        return boundary_of(self, component, threads=threads)
+
+    @property
+    def keeps_colours(self) -> bool:
+        """Whether every gluing carries each corner to the one of the same number: a coloured graph."""
+        return not bool((self.rank[self.across >= 0] != 0).any())
+
     def named(self, labels: np.ndarray) -> list:
         """Labels as nested lists, as words where the triangulation was written in words."""
         if self.corner_names is None:
@@ -249,13 +340,14 @@ class Triangulation:
         return f"simplex {simplex}: {_show(self.corners[simplex], self.corner_names)}"
 
     def __eq__(self, other: object) -> bool:
-        """Equal when the tables, labels, names and coordinates are."""
+        """Equal when the tables, labels, names and coordinates are, and how they were meant."""
         if not isinstance(other, Triangulation):
             return NotImplemented
         mine, theirs = self.coordinates or Coordinates(), other.coordinates or Coordinates()
         pairs = [(getattr(self, x), getattr(other, x)) for x in ("across", "rank", "written", "corners")]
         pairs += list(zip(mine, theirs, strict=True))
-        return self.corner_names == other.corner_names and all(
+        mine_meant = (self.corner_names, self.matched, self.coloured)
+        return mine_meant == (other.corner_names, other.matched, other.coloured) and all(
             a is b or (a is not None and b is not None and a.shape == b.shape and bool(np.array_equal(a, b)))
             for a, b in pairs
         )
@@ -264,7 +356,7 @@ class Triangulation:
 
     def __repr__(self) -> str:
         free = int((self.across < 0).sum())
-        kind = "unlabelled" if self.corners is None else "labelled"
+        kind = "coloured" if self.coloured else "unlabelled" if self.corners is None else "labelled"
         return (
             f"<Triangulation {self.dimension}D: {len(self)} simplices, {kind}, "
             f"{free} boundary facet{'' if free == 1 else 's'}>"
@@ -331,22 +423,30 @@ def _id_dtype(n: int) -> type:
     return np.int32 if n < 2**31 else np.int64
 
 
-def _compact(corners: np.ndarray) -> tuple[np.ndarray, int]:
-    """The labels as numbers from 0 in the same order, int32, and how many numbers that takes."""
+def _compact(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, int]:
+    """The labels as numbers from 0, int32, and how many numbers that takes."""
     low, high = int(corners.min()), int(corners.max())
     if high - low <= 2 * corners.size:  # a table over the whole range is no larger than the labels themselves
         return (corners - low).astype(np.int32), high - low + 1
-    words, positions = np.unique(corners, return_inverse=True)
-    if len(words) >= 2**31:
-        raise LimitError(f"{len(words)} different labels are more than 2**31")
-    return positions.reshape(corners.shape).astype(np.int32), len(words)
+    if corners.size >= 2**31:
+        raise LimitError(f"{len(corners)} simplices with labels up to {high} are more than this can number")
+    points = np.empty(corners.shape, dtype=np.int32)
+    factors = np.frombuffer(os.urandom(16), dtype=np.int64) >> 2 | 1
+    progress = np.zeros(1, dtype=np.int64)
+    bits = 12
+    while True:
+        keys = np.empty(1 << bits, dtype=np.int64)
+        numbers = np.full(1 << bits, -1, dtype=np.int32)
+        if run(number_labels, corners.ravel(), factors, keys, numbers, 63 - bits, points.ravel(), progress):
+            return points, int(progress[0])
+        bits += 2
 
 
 def _match(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, np.ndarray]:
     """`across` and `rank` of sorted labels; -2 marks facets of three or more simplices."""
     n, k = corners.shape
     axes = tuple(range(k))
-    points, count = _compact(corners)
+    points, count = _compact(corners, run)
     flat = points.ravel()
     degree = np.bincount(flat, minlength=count).astype(np.int32)
     bucket = np.empty(2 * n, dtype=np.int8)
@@ -464,6 +564,94 @@ def _check_labels_kept(across: np.ndarray, rank: np.ndarray, labels: np.ndarray)
                 f"simplex {s}, slot {i}: labels {labels[s].tolist()} meet {labels[across[s, i]].tolist()}",
                 "leave the labels out, or mend the gluing",
             )
+
+
+def _check_colours_kept(across: np.ndarray, rank: np.ndarray) -> None:
+    wrong = np.argwhere((across >= 0) & (rank != 0))
+    if len(wrong):
+        s, i = wrong[0].tolist()
+        image = permutations_of(across.shape[1] - 1).image[rank[s, i]].tolist()
+        raise InputError(
+            "a gluing does not keep the colours of the corners",
+            f"simplex {s}, slot {i}: corners 0 to {len(image) - 1} go to {image}",
+            "in a coloured graph corner c is carried to corner c",
+        )
+
+
+def _check_matched(across: np.ndarray, rank: np.ndarray, labels: np.ndarray | None) -> None:
+    """Refuse gluings that are not those that matching the labels gives."""
+    hint = "leave matched out, or give the facets alone"
+    if labels is None:
+        raise InputError("matched says that labels were matched, and there are none", hint=hint)
+    if (falling := (labels[:, 1:] <= labels[:, :-1]).any(axis=1)).any():
+        s = int(np.argmax(falling))
+        raise InputError(
+            "matched asks for corners in ascending order", f"simplex {s}: {labels[s].tolist()}", hint
+        )
+    t = Triangulation.from_facets(labels)
+    wrong = np.argwhere((t.across != across) | (t.rank != rank))
+    if len(wrong):
+        s, i = wrong[0].tolist()
+        raise InputError(
+            "matched is true, but these are not the gluings that matching the labels gives",
+            f"simplex {s}, slot {i}: across {across[s, i]}, by labels {t.across[s, i]}",
+            hint,
+        )
+
+
+def _carry_labels(labels: np.ndarray, across: np.ndarray, names: tuple[str, ...] | None) -> np.ndarray:
+    """The carrying permutations that keep the labels of the shared facets: int64, shape (N, K, K)."""
+    n, k = labels.shape
+
+    def refuse(bad: np.ndarray, what: str, hint: str) -> None:
+        places = np.argwhere(bad)
+        if len(places):
+            s, i = places[0].tolist()
+            more = f" and {len(places) - 1} more" if len(places) > 1 else ""
+            t = across[s, i]
+            theirs = f", and simplex {t}: {_show(labels[t], names)}" if 0 <= t < n else ""
+            raise InputError(what, f"simplex {s}: {_show(labels[s], names)}, slot {i}{theirs}{more}", hint)
+
+    refuse(
+        (across < -1) | (across >= n),
+        "a slot is glued to a simplex that does not exist",
+        f"simplices are numbered 0 to {n - 1}; -1 means boundary",
+    )
+    inner = across >= 0
+    there = np.where(inner, across, 0)
+    others = np.array([[c for c in range(k) if c != i] for i in range(k)])
+    # the corners of each facet in the order of their labels
+    order = [others[i][np.argsort(labels[:, others[i]], axis=1, kind="stable")] for i in range(k)]
+    facet = [np.take_along_axis(labels, order[i], axis=1) for i in range(k)]
+    twice = np.stack([(facet[i][:, 1:] == facet[i][:, :-1]).any(axis=1) for i in range(k)], axis=1)
+    refuse(
+        inner & twice,
+        "a label occurs twice on a facet, so the labels do not say how it is glued",
+        "give the carrying permutations (carry) as well",
+    )
+    carry = np.full((n, k, k), -1, dtype=np.int64)
+    fitting = np.zeros((n, k), dtype=np.int8)
+    for i in range(k):
+        for j in range(k):
+            t = there[:, i]
+            fits = inner[:, i] & (across[t, j] == np.arange(n)) & (facet[i] == facet[j][t]).all(axis=1)
+            if i == j:
+                fits &= t != np.arange(n)  # a facet is not glued to itself
+            rows = np.flatnonzero(fits)
+            fitting[rows, i] += 1
+            carry[rows, i, i] = j
+            carry[rows[:, None], i, order[i][rows]] = order[j][t[rows]]
+    refuse(
+        inner & (fitting == 0),
+        "no facet of the simplex across has these labels and leads back",
+        "slot i is the facet opposite corner i: are the neighbours in the order of the corners?",
+    )
+    refuse(
+        inner & (fitting > 1),
+        "several facets of the simplex across would do, so the labels do not say which is glued",
+        "give the carrying permutations (carry) as well",
+    )
+    return carry
 
 
 # -- coordinates -----------------------------------------------------------------------------------

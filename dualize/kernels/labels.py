@@ -5,7 +5,7 @@ bucket is sorted on the labels that are left.  A corner that lies in every simpl
 never fills a bucket, no hash can be attacked, and the work is n log n whatever the labels are.
 """
 
-__all__ = ["bucket_sizes", "fill_buckets", "match_buckets", "sort_rows"]
+__all__ = ["bucket_sizes", "fill_buckets", "match_buckets", "number_labels", "sort_rows"]
 
 
 def sort_rows(labels, corners, written, axes, lo, hi):
@@ -29,6 +29,33 @@ def sort_rows(labels, corners, written, axes, lo, hi):
                 return s
         written[s] = sign
     return -1
+
+
+def number_labels(labels, factors, keys, numbers, shift, out, progress):
+    """Number the labels by first occurrence, with a table of a power of two of places, ``63 - shift`` bits.
+
+    `numbers` must be -1 at the start; the two `factors` are drawn at random for each run, so that no choice
+    of labels collides on purpose.  Returns 1 when done, with the count in ``progress[0]``, and 0 when the
+    table is half full.
+    """
+    last = len(keys) - 1
+    count = 0
+    for x in range(len(labels)):
+        label = labels[x]
+        mixed = (label * factors[0]) & 0x7FFFFFFFFFFFFFFF
+        mixed = ((mixed ^ (mixed >> 31)) * factors[1]) & 0x7FFFFFFFFFFFFFFF
+        place = mixed >> shift
+        while numbers[place] >= 0 and keys[place] != label:
+            place = (place + 1) & last
+        if numbers[place] < 0:
+            if 2 * count > last:
+                return 0
+            keys[place] = label
+            numbers[place] = count
+            count += 1
+        out[x] = numbers[place]
+    progress[0] = count
+    return 1
 
 
 def bucket_sizes(points, degree, bucket, size, axes, n):

@@ -5,8 +5,8 @@
     write               either; atomic, and never over an existing file unless told to
     encode, decode      the same without files
 
-Formats stand in one table (`registry`), a module each; a document (`document`) is what the containers JSON, HDF5
-and NPZ have in common.
+Formats stand in one table (`registry`), a module each; a document (`document`) is what JSON, HDF5 and
+NPZ have in common.
 """
 
 from __future__ import annotations
@@ -115,7 +115,9 @@ def load(path: str | PathLike[str] | BinaryIO, *, kind: str | None = None, check
     """
     content, source = _open(path, kind, None, None, None, hashed=False)[:2]
     if isinstance(content, Triangulation):
-        raise InputError("this is a triangulation, not a skeleton", source.name, "read it, and build its skeleton")
+        raise InputError(
+            "this is a triangulation, not a skeleton", source.name, "read it, and build its skeleton"
+        )
     if check:
         try:
             content.validate()
@@ -238,10 +240,11 @@ def write(
     force : bool
         Overwrite an existing file.
     kind : str, optional
-        Name of the format or a suffix; by default the suffix of the file decides.  ``"gluing"`` means a gluing
-        table in the format of the suffix, also where a triangulation is determined by its labels.
+        Name of the format or a suffix; by default the suffix of the file decides.  ``"gluing"`` means a
+        gluing table in the format of the suffix, also where labels determine the triangulation.
     compress : bool
-        Compress the arrays of an HDF5 or NPZ file.  JSON and text are compressed where the name ends with ``.gz``.
+        Compress the arrays of an HDF5 or NPZ file.  JSON and text are packed where the name ends
+        with ``.gz``.
     notes : callable, optional
         Called with a line about what the format cannot hold.
 
@@ -266,10 +269,16 @@ def write(
     if compress and chosen.name not in ("hdf5", "npz"):
         raise InputError(f"{chosen.name} files are not compressed inside", hint="let the name end with .gz")
     if packed and not chosen.packed:
-        raise InputError(f"{chosen.name} files are not packed with gzip", hint="take .gz off the name, and compress")
+        raise InputError(
+            f"{chosen.name} files are not packed with gzip", hint="take .gz off the name, and compress"
+        )
     if gluing and chosen.name not in ("json", "hdf5", "npz"):
         raise InputError(f"{chosen.name} files hold no gluing tables", hint="write .json, .h5 or .npz")
-    if isinstance(content, Triangulation) and content.coordinates is not None and chosen.name in ("text", "npy"):
+    if (
+        isinstance(content, Triangulation)
+        and content.coordinates is not None
+        and chosen.name in ("text", "npy")
+    ):
         (notes or (lambda line: None))(f"left out the coordinates, which {chosen.name} files cannot hold")
     assert chosen.write is not None
     if name == "-":

@@ -34,7 +34,9 @@ def choose(
     if dataset is not None:
         wanted = dataset.strip("/")
         if wanted not in names:
-            raise InputError(f"there is no array {dataset}", hint="the file holds " + (_list(names) or "no array"))
+            raise InputError(
+                f"there is no array {dataset}", hint="the file holds " + (_list(names) or "no array")
+            )
         return {wanted: "facets"}
     if "format" in names or "vertices/orientation" in names or "across" in names or "facets" in names:
         return {name: name for name in names}

@@ -1,20 +1,21 @@
 """Triangulations and skeletons as documents: flat mappings of names to arrays and JSON values.
 
 A document is what every container (JSON, HDF5, NPZ) stores in its own way.  A skeleton's document has
-``format``, ``version``, ``dimension``, ``counts``, ``flags``, ``provenance``, ``corner_names`` (where labels are
-words), the tables of the layout, and whatever further groups the skeleton carries.  A triangulation's document
-is one of
+``format``, ``version``, ``dimension``, ``counts``, ``flags``, ``provenance``, ``corner_names`` (where labels
+are words), the tables of the layout, and whatever further groups the skeleton carries.  A triangulation's
+document is one of
 
     facets, with coordinates and corner_names where there are some
-    across, carry, written, with corners, corner_names and coordinates where there are some
+    across, carry, written, with corners, corner_names and coordinates where there are some, and ``matched`` or
+    ``coloured`` (true) where the triangulation is
 
 Arrays may come as nested lists; nothing that comes in is trusted.
 """
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from itertools import chain
+from collections.abc import Callable, Mapping
+from itertools import chain, pairwise
 from typing import Any
 
 import numpy as np
@@ -40,6 +41,21 @@ __all__ = [
 # entries of a skeleton that are no tables
 HEADER = ("format", "version", "dimension", "counts", "flags", "provenance", "corner_names")
 
+TRIANGULATION_ENTRIES = (
+    "facets",
+    "across",
+    "carry",
+    "written",
+    "corners",
+    "corner_names",
+    "coordinates",
+    "matched",
+    "coloured",
+)
+
+# what a gluing table may say of itself; `Triangulation` checks it
+MARKS = ("matched", "coloured")
+
 # the largest count that is taken seriously: tables of it would not fit into 2**63 bytes
 LARGEST = 2**48
 
@@ -51,7 +67,9 @@ def document_of(content: Triangulation | Skeleton, gluing: bool = False) -> dict
     return triangulation_document(content, gluing)
 
 
-def content_of(document: Mapping[str, Any], threads: int | None = None) -> tuple[Triangulation | Skeleton, str]:
+def content_of(
+    document: Mapping[str, Any], threads: int | None = None, notes: Callable[[str], object] | None = None
+) -> tuple[Triangulation | Skeleton, str]:
     """What a document holds, and in a few words which kind of document it is.
 
     Raises
@@ -60,7 +78,7 @@ def content_of(document: Mapping[str, Any], threads: int | None = None) -> tuple
     """
     if "format" in document or "vertices/orientation" in document:
         return skeleton_of(document), "skeleton"
-    return triangulation_of(document, threads)
+    return triangulation_of(document, threads, notes)
 
 
 # -- skeletons -------------------------------------------------------------------------------------
@@ -96,30 +114,30 @@ def skeleton_of(document: Mapping[str, Any]) -> Skeleton:
         Naming the first entry that does not fit.
     """
     kind, version = document.get("format"), document.get("version")
-    if kind != FORMAT:
-        raise SkeletonError(f"the format is {kind!r}, not {FORMAT!r}", "format")
+    if not isinstance(kind, str) or kind != FORMAT:
+        raise SkeletonError(f"the format is {_name_of(kind)}, not {FORMAT!r}", "format")
     if type(version) is not int or version != VERSION:
         raise SkeletonError(
-            f"the file has version {version!r} of the layout, and this program reads version {VERSION}",
+            f"this is version {_name_of(version)} of the layout, and this program reads version {VERSION}",
             "version",
             "read it with the program that wrote it, or a newer one",
         )
     dimension = document.get("dimension")
     if type(dimension) is not int or dimension not in (2, 3, 4):
-        raise SkeletonError(f"the dimension is {dimension!r}, not 2, 3 or 4", "dimension")
+        raise SkeletonError(f"the dimension is {_name_of(dimension)}, not 2, 3 or 4", "dimension")
     counts, flags = document.get("counts"), document.get("flags")
     if not isinstance(counts, dict) or not isinstance(flags, dict):
         name = "flags" if isinstance(counts, dict) else "counts"
         raise SkeletonError(f"{name} is missing, or no mapping", name)
     for name in COUNTS:
         if type(counts.get(name)) is not int or not 0 <= counts[name] < LARGEST:
-            raise SkeletonError(f"{counts.get(name)!r} is no number of cells", f"counts/{name}")
+            raise SkeletonError(f"{_name_of(counts.get(name))} is no number of cells", f"counts/{name}")
     orientable = flags.get("orientable")
     if not isinstance(orientable, list) or any(type(x) is not bool for x in orientable):
         raise SkeletonError("this is no list of truth values, one for each component", "flags/orientable")
     for name in ("ordered", "singular"):
         if type(flags.get(name)) is not bool:
-            raise SkeletonError(f"it is {flags.get(name)!r}, not true or false", f"flags/{name}")
+            raise SkeletonError(f"it is {_name_of(flags.get(name))}, not true or false", f"flags/{name}")
     names = document.get("corner_names")
     if names is not None and not (isinstance(names, list) and all(type(x) is str for x in names)):
         raise SkeletonError("this is no list of words", "corner_names")
@@ -153,7 +171,7 @@ def _fit(value: Any, table: Table, letters: dict[str, int], ids: np.dtype) -> np
     array = table_of(value, table.name)
     if array.size == 0 and 0 in shape and array.ndim <= len(shape):
         array = array.reshape([max(n, 0) for n in shape])
-    if array.ndim != len(shape) or any(m not in (n, -1) for m, n in zip(array.shape, shape, strict=False)):
+    if array.ndim != len(shape) or any(n not in (m, -1) for m, n in zip(array.shape, shape, strict=False)):
         wanted = ", ".join(str(n) if n >= 0 else str(x) for n, x in zip(shape, table.shape, strict=True))
         raise InputError(f"the shape is {array.shape}, and the counts ask for ({wanted})", table.name)
     for letter, n in zip(table.shape, array.shape, strict=True):
@@ -164,6 +182,8 @@ def _fit(value: Any, table: Table, letters: dict[str, int], ids: np.dtype) -> np
 
 def _cast(array: np.ndarray, dtype: np.dtype, name: str) -> np.ndarray:
     """The array in another width, if every entry fits."""
+    if array.dtype == dtype and dtype.kind != "f":
+        return array
     if array.dtype.kind not in ("iuf" if dtype.kind == "f" else "iu"):
         wanted = "numbers" if dtype.kind == "f" else "integers"
         raise InputError(f"the entries are {array.dtype}, not {wanted}", name)
@@ -203,13 +223,13 @@ def flatten(tree: Mapping[str, Any], keep: tuple[str, ...] = ()) -> dict[str, An
         If two entries have the same name, or a name is empty.
     """
     flat: dict[str, Any] = {}
-    stack: list[tuple[str, Any]] = [(key, value) for key, value in reversed(tree.items())]
+    stack: list[tuple[str, Any]] = [(key, value) for key, value in reversed(list(tree.items()))]
     while stack:
         name, value = stack.pop()
         if not isinstance(name, str) or not all(name.split("/")):
             raise InputError("an entry has an empty name", repr(name))
         if isinstance(value, Mapping) and value and name not in keep:
-            stack.extend((f"{name}/{key}", inner) for key, inner in reversed(value.items()))
+            stack.extend((f"{name}/{key}", inner) for key, inner in reversed(list(value.items())))
         elif name in flat:
             raise InputError("two entries have the same name", name)
         else:
@@ -235,7 +255,9 @@ def _plain(value: Any) -> Any:
         if value.dtype.kind in "US":
             return value.astype(str).tolist()
         if value.dtype.kind not in "biufc":
-            raise InputError(f"an array of {value.dtype} cannot be written", hint="give numbers, or JSON values")
+            raise InputError(
+                f"an array of {value.dtype} cannot be written", hint="give numbers, or JSON values"
+            )
         return value
     return value
 
@@ -304,14 +326,16 @@ def _name_of(value: Any) -> str:
         return "a mapping"
     if isinstance(value, list):
         return "a list"
-    return {None: "null", True: "true", False: "false"}.get(value, repr(value))
+    if isinstance(value, np.ndarray):
+        return f"an array of {value.dtype}"
+    return {"None": "null", "True": "true", "False": "false"}.get(str(value), repr(value)[:40])
 
 
 # -- triangulations --------------------------------------------------------------------------------
 
 
 def triangulation_document(t: Triangulation, gluing: bool = False) -> dict[str, Any]:
-    """The document of a triangulation: its facets where labels say it all, else (or on request) its gluings."""
+    """The document of a triangulation: facets where labels say it all, else (or on request) gluings."""
     document: dict[str, Any]
     coordinates = t.coordinates or Coordinates()
     chart = coordinates.corner
@@ -325,6 +349,7 @@ def triangulation_document(t: Triangulation, gluing: bool = False) -> dict[str, 
         document = {"across": t.across, "carry": t.carry, "written": t.written}
         if t.corners is not None:
             document["corners"] = t.corners
+        document.update((name, True) for name in MARKS if getattr(t, name))
     if t.corner_names is not None:
         document["corner_names"] = list(t.corner_names)
     for name, array in (("point", coordinates.point), ("corner", chart), ("period", coordinates.period)):
@@ -333,13 +358,19 @@ def triangulation_document(t: Triangulation, gluing: bool = False) -> dict[str, 
     return document
 
 
-def triangulation_of(document: Mapping[str, Any], threads: int | None = None) -> tuple[Triangulation, str]:
+def triangulation_of(
+    document: Mapping[str, Any], threads: int | None = None, notes: Callable[[str], object] | None = None
+) -> tuple[Triangulation, str]:
     """The triangulation of a document, and which kind of document it is.
 
     Raises
     ------
     InputError, TriangulationError
     """
+    unread = [name for name in document if name.split("/")[0] not in TRIANGULATION_ENTRIES]
+    if unread and notes is not None and ("across" in document or "facets" in document):
+        more = f" and {len(unread) - 8} more" if len(unread) > 8 else ""
+        notes(f"ignored {', '.join(unread[:8])}{more}: no entries of a triangulation")
     if "across" in document:
         return _gluings(document), "gluing table"
     if "facets" not in document:
@@ -356,12 +387,15 @@ def triangulation_of(document: Mapping[str, Any], threads: int | None = None) ->
 
 def _gluings(document: Mapping[str, Any]) -> Triangulation:
     if "carry" not in document:
-        raise InputError("there is across but no carry", hint="carry[s][i] lists the images of the corners of s")
+        raise InputError(
+            "there is across but no carry", hint="carry[s][i] lists the images of the corners of s"
+        )
     across = table_of(document["across"], "across")
     corners = names = None
     if document.get("corners") is not None:
         corners, names = _labels(document["corners"], "corners", document.get("corner_names"))
     written = document.get("written")
+    marks = {name: True for name in MARKS if document.get(name) is True}
     t = Triangulation.from_gluings(
         across,
         table_of(document["carry"], "carry"),
@@ -369,6 +403,7 @@ def _gluings(document: Mapping[str, Any]) -> Triangulation:
         corners=corners,
         corner_names=names,
         coordinates=_coordinates(document, corners, names),
+        **marks,
     )
     c = t.coordinates
     if c is not None and c.corner is not None and c.corner.shape[:2] != t.across.shape:
@@ -398,8 +433,9 @@ def _labels(value: Any, name: str, names: Any) -> tuple[np.ndarray, tuple[str, .
             wanted = str if kinds - {int, float} == {str} and type(flat[0]) is str else int
             at = next(i for i, x in enumerate(flat) if type(x) is not wanted)
             row = at // shape[-1] if len(shape) == 2 else at
+            meant = "word" if wanted is str else "integer within 64 bits"
             raise InputError(
-                f"the label {_name_of(flat[at])} is no {'word' if wanted is str else 'integer within 64 bits'}",
+                f"the label {_name_of(flat[at])} is no {meant}",
                 f"{name}[{row}]",
                 "labels are all integers, or all words; a mixture is written as words throughout",
             )
@@ -416,7 +452,7 @@ def _labels(value: Any, name: str, names: Any) -> tuple[np.ndarray, tuple[str, .
     if not isinstance(names, list) or any(type(x) is not str for x in names):
         raise InputError("this is no list of words", "corner_names")
     check_words(names, "corner_names")
-    if any(a >= b for a, b in zip(names[:-1], names[1:], strict=True)):
+    if any(a >= b for a, b in pairwise(names)):
         raise InputError("the words are not in order of code points, or one is repeated", "corner_names")
     if labels.min() < 0 or labels.max() >= len(names):
         raise InputError(f"a label is no position in the {len(names)} words of corner_names", name)
@@ -457,19 +493,21 @@ def _coordinates(
     }
     for key, ndim in (("point", 2), ("corner", 3), ("period", 1)):
         if key in arrays and arrays[key].ndim != ndim:
-            raise InputError(f"the shape is {arrays[key].shape}, not of {ndim} dimensions", f"coordinates/{key}")
+            raise InputError(
+                f"the shape is {arrays[key].shape}, not of {ndim} dimensions", f"coordinates/{key}"
+            )
     axes = {arrays[key].shape[-1] for key in arrays}
     if len(axes) > 1 or not arrays.keys() - {"period"}:
         raise InputError("point, corner and period do not fit together", "coordinates")
     return Coordinates(**arrays)
 
 
-def _by_label(
-    rows: dict[str, Any], labels: np.ndarray | None, names: tuple[str, ...] | None
-) -> Coordinates:
-    """Coordinates given for each label: one chart where labels can number rows, else one chart per simplex."""
+def _by_label(rows: dict[str, Any], labels: np.ndarray | None, names: tuple[str, ...] | None) -> Coordinates:
+    """Coordinates given by label: one chart where labels can number rows, else one chart per simplex."""
     if labels is None:
-        raise InputError("coordinates by label need labels", "coordinates", "give corners, or coordinates/corner")
+        raise InputError(
+            "coordinates by label need labels", "coordinates", "give corners, or coordinates/corner"
+        )
     keys = np.array(list(range(len(names)))) if names is not None else np.unique(labels)
     table = _cast(table_of(list(rows.values()), "coordinates"), np.dtype(np.float64), "coordinates")
     if table.ndim != 2:
@@ -484,4 +522,3 @@ def _by_label(
     if names is None and keys[0] == 0 and keys[-1] == len(keys) - 1:
         return Coordinates(point=found)
     return Coordinates(corner=found[np.searchsorted(keys, labels)])
-

@@ -1,9 +1,9 @@
 """HDF5: datasets under the names of the layout, groups by ``/``.
 
-``format`` (a string), ``version`` and ``dimension`` (integers) are attributes of the root.  ``counts``, ``flags``,
-``provenance`` and any JSON value of a further group are datasets of a single string, JSON text (as attributes they
-would be limited to 64 kB); ``corner_names`` is a dataset of strings.  Triangulations lie there likewise:
-``facets``, or ``across`` and ``carry``, and so on.
+``format`` (a string), ``version`` and ``dimension`` (integers) are attributes of the root.  ``counts``,
+``flags``, ``provenance`` and any JSON value of a further group are datasets of a single string, JSON text (as
+attributes they would be limited to 64 kB); ``corner_names`` is a dataset of strings.  Triangulations lie
+there likewise: ``facets``, or ``across`` and ``carry``, and so on.
 
 The same content gives the same bytes: no times are kept.
 """
@@ -46,7 +46,9 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
             datasets = _datasets(file)
             check_unpacked(sum(d.size * d.dtype.itemsize for d in datasets.values()), source.size)
             known = list(datasets) + [name for name in ATTRIBUTES if name in file.attrs]
-            names = choose(known, options.dataset, lambda name: (datasets[name].shape, datasets[name].dtype.kind))
+            names = choose(
+                known, options.dataset, lambda name: (datasets[name].shape, datasets[name].dtype.kind)
+            )
             document: dict[str, Any] = {}
             for name in names:
                 document[names[name]] = (
@@ -58,7 +60,7 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
     except (OSError, RuntimeError, KeyError, ValueError, TypeError, OverflowError, UnicodeError) as error:
         what = (str(error) or type(error).__name__).splitlines()[0][:160]
         raise InputError(f"the HDF5 file cannot be read: {what}", hint="is the file whole?") from None
-    content, how = content_of(unpack_strings(document), options.threads)
+    content, how = content_of(unpack_strings(document), options.threads, options.notes)
     return content, f"HDF5, {how}"
 
 
@@ -78,7 +80,9 @@ def _datasets(file: h5py.File) -> dict[str, h5py.Dataset]:
         for key in group:
             name = f"{prefix}{key}"
             if not isinstance(group.get(key, getlink=True), h5py.HardLink):
-                raise InputError("a link to another place is not followed", name, "copy the data into the file")
+                raise InputError(
+                    "a link to another place is not followed", name, "copy the data into the file"
+                )
             item = group[key]
             if isinstance(item, h5py.Group):
                 stack.append((name + "/", item))

@@ -1,12 +1,12 @@
 """JSON: skeletons, facet lists, gluing tables.
 
-A skeleton is an object per group (``/`` nests), arrays as nested lists.  A triangulation is a list of facets, or
-an object with ``facets`` (and ``coordinates``), or one with ``across`` and ``carry`` (and ``written``,
+A skeleton is an object per group (``/`` nests), arrays as nested lists.  A triangulation is a list of facets,
+or an object with ``facets`` (and ``coordinates``), or one with ``across`` and ``carry`` (and ``written``,
 ``corners``, ``corner_names``, ``coordinates``).  Coordinates are a list with a row for every label, an object
 from label to row, or an object with ``point``, ``corner``, ``period``.
 
-JSON has no widths and no empty shapes: the tables of the layout get theirs back on reading; in further groups a
-box of numbers comes back as int64 or float64, anything else as plain lists and objects.  It has no NaN.
+JSON has no widths and no empty shapes: the tables of the layout get theirs back on reading; in further groups
+a box of numbers comes back as int64 or float64, anything else as plain lists and objects.  It has no NaN.
 """
 
 from __future__ import annotations
@@ -20,6 +20,7 @@ from ..errors import InputError
 from ..layout import TABLES
 from ..skeleton import Skeleton
 from ..triangulation import Triangulation
+from .boxes import loads
 from .document import HEADER, content_of, document_of, flatten, table_of
 from .registry import Content, Format, Options
 from .source import Source
@@ -28,7 +29,6 @@ from .target import Target
 __all__ = ["FORMAT"]
 
 BOM = b"\xef\xbb\xbf"
-CUT = ("end", "EOF")
 
 
 def sniff(head: bytes) -> bool:
@@ -39,14 +39,14 @@ def sniff(head: bytes) -> bool:
 def read(source: Source, options: Options) -> tuple[Content, str]:
     """Read JSON."""
     tree = _loads(source.take().removeprefix(BOM))
-    if isinstance(tree, list):
+    if isinstance(tree, list | np.ndarray):
         tree = {"facets": tree}
     if not isinstance(tree, dict):
         raise InputError("it is neither an object nor a list of facets")
-    if "format" in tree or "vertices" in tree:
+    if "format" in tree or isinstance(tree.get("vertices"), dict):
         tree = flatten(tree, keep=("counts", "flags", "provenance"))
         tree = {name: _value(name, tree[name]) for name in tree}
-    content, how = content_of(tree, options.threads)
+    content, how = content_of(tree, options.threads, options.notes)
     return content, f"JSON, {how}"
 
 
@@ -54,7 +54,7 @@ def _loads(data: bytes) -> Any:
     import orjson
 
     try:
-        return orjson.loads(data)
+        return loads(data)
     except orjson.JSONDecodeError as error:
         cut = "end of data" in error.msg or error.pos >= len(error.doc.rstrip())
         what = "the JSON text ends in the middle" if cut else f"this is no JSON: {error.msg.split(':')[0]}"

@@ -1,7 +1,7 @@
 """Mesh formats: tetrahedra (or triangles, where there are no tetrahedra) with coordinates, read by meshio.
 
-The labels of the corners are the positions of the points in the file.  Cells of lower dimension are left out with
-a note; other cells of the top dimension (hexahedra, cells with points between the corners, mixtures) are
+The labels of the corners are the positions of the points in the file.  Cells of lower dimension are left out
+with a note; other cells of the top dimension (hexahedra, cells with points between the corners, mixtures) are
 refused.  Coordinates are kept as they are, with as many axes as the file has.
 """
 
@@ -25,8 +25,8 @@ if TYPE_CHECKING:
 
 __all__ = ["FORMAT"]
 
-# Suffix -> what meshio may call the format, in the order in which they are tried.  Kept here so that a suffix is
-# known without importing meshio.
+# Suffix -> what meshio may call the format, in the order in which they are tried.  Kept here so that a suffix
+# is known without importing meshio.
 KINDS = {
     ".msh": ("gmsh", "ansys"),
     ".vtk": ("vtk",),
@@ -75,7 +75,6 @@ SIGNS = (
     (b"mesh3d", ".vol"),
     (b"ply\n", ".ply"),
     (b"OFF\n", ".off"),
-    (b"solid ", ".stl"),
 )
 
 SIMPLEX = {2: "triangle", 3: "tetra"}
@@ -92,6 +91,8 @@ def _sign(head: bytes) -> str | None:
         return ".vtu"
     if b"<Xdmf" in head[:512]:
         return ".xdmf"
+    if text.startswith(b"solid") and b"facet normal" in text:
+        return ".stl"
     return next((suffix for sign, suffix in SIGNS if text.startswith(sign)), None)
 
 
@@ -100,7 +101,8 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
     suffix = options.suffix or _sign(source.head)
     if suffix is None:
         raise InputError(
-            "a mesh on a stream does not say its format", hint="name it by its suffix, as in --from vtu, kind='vtu'"
+            "a mesh on a stream does not say its format",
+            hint="name it by its suffix, as in --from vtu, kind='vtu'",
         )
     if source.path is not None:
         mesh, kind = _load(source.path, suffix)
@@ -116,7 +118,9 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
         row = int(np.argmin(np.isfinite(points).all(axis=1))) if points.ndim == 2 else 0
         raise InputError("a point has a coordinate that is no finite number", f"point {row}")
     name = {4: "tetrahedra", 3: "triangles"}[facets.shape[1]]
-    content = Triangulation.from_facets(facets, coordinates=Coordinates(point=points), threads=options.threads)
+    content = Triangulation.from_facets(
+        facets, coordinates=Coordinates(point=points), threads=options.threads
+    )
     return content, f"mesh ({kind}), {name}"
 
 
@@ -134,7 +138,9 @@ def _load(path: str, suffix: str) -> tuple[meshio.Mesh, str]:
             reasons.append(_reason(error, said.getvalue()))
         said = io.StringIO()
     kinds = " or ".join(KINDS[suffix])
-    raise InputError(f"the mesh cannot be read as {kinds}: {reasons[0]}", hint="is the file whole, and of that kind?")
+    raise InputError(
+        f"the mesh cannot be read as {kinds}: {reasons[0]}", hint="is the file whole, and of that kind?"
+    )
 
 
 def _reason(error: BaseException, said: str) -> str:
@@ -155,7 +161,7 @@ def _simplices(mesh: meshio.Mesh, options: Options) -> np.ndarray:
     others = sorted({block.type for block in blocks if block.dim == top and block.type != SIMPLEX[top]})
     if others:
         raise InputError(
-            f"the mesh holds cells that are no {'tetrahedra' if top == 3 else 'triangles'}: {', '.join(others)}",
+            f"the mesh holds other cells than {'tetrahedra' if top == 3 else 'triangles'}: {', '.join(others)}",
             hint="split them into simplices, and save cells without points between the corners",
         )
     left_out: dict[str, int] = {}

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from io import BytesIO
 from typing import IO, Any
 
 import numpy as np
@@ -13,7 +14,7 @@ from .registry import Content, Format, Options
 from .source import Source
 from .target import Target
 
-__all__ = ["FORMAT", "read_array"]
+__all__ = ["FORMAT", "npy_bytes", "read_array"]
 
 MAGIC = b"\x93NUMPY"
 
@@ -30,7 +31,7 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
             array = read_array(file, source.size, "the array")
     else:
         array = read_array(source.file, source.size, "the array")
-    content, how = content_of({"facets": array}, options.threads)
+    content, how = content_of({"facets": array}, options.threads, options.notes)
     return content, f"NPY, {how}"
 
 
@@ -61,15 +62,16 @@ def read_array(file: IO[bytes], size: int, name: str) -> np.ndarray:
     for n in shape:
         count *= n
     there = size - begin
-    if count * dtype.itemsize != there:
+    wanted = count * dtype.itemsize
+    if wanted != there:
         raise InputError(
-            f"the header promises {count * dtype.itemsize} bytes ({dtype}, shape {shape}), and there are {there}",
+            f"the header promises {wanted} bytes ({dtype}, shape {shape}), and there are {there}",
             name,
             "is the file whole?",
         )
     array = np.empty(count, dtype=dtype)
     if array.nbytes:
-        room = memoryview(array.view(np.uint8)).cast("B")
+        room = array.view(np.uint8).data
         got = 0
         while got < len(room):
             n = file.readinto(room[got : got + (1 << 24)])  # type: ignore[attr-defined]
@@ -83,6 +85,13 @@ def _first_line(error: BaseException) -> str:
     return (str(error).splitlines() or [type(error).__name__])[0][:120]
 
 
+def npy_bytes(array: np.ndarray) -> bytes:
+    """The NPY bytes of an array."""
+    stream = BytesIO()
+    np.lib.format.write_array(stream, array, (1, 0), allow_pickle=False)
+    return stream.getvalue()
+
+
 def write(content: Content, target: Target) -> None:
     """Write the facets as a NPY file."""
     if isinstance(content, Skeleton):
@@ -90,7 +99,9 @@ def write(content: Content, target: Target) -> None:
     document: dict[str, Any] = document_of(content)
     if "facets" not in document or content.corner_names is not None:
         raise InputError("NPY holds integer labels only", hint="write .npz, .h5 or .json")
-    np.lib.format.write_array(target.stream, np.ascontiguousarray(document["facets"]), (1, 0), allow_pickle=False)
+    np.lib.format.write_array(
+        target.stream, np.ascontiguousarray(document["facets"]), (1, 0), allow_pickle=False
+    )
 
 
 FORMAT = Format(

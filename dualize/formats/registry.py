@@ -1,7 +1,7 @@
 """The formats in one table, and how one is chosen: by name, by suffix, by the first bytes.
 
-To add a format write a module with a ``FORMAT`` and add it to `MODULES`.  Several formats may share a suffix:
-the first whose `sniff` knows the first bytes is taken, else the last, so put the particular before the general.
+To add a format write a module with a ``FORMAT`` and add it to `MODULES`.  Several formats may share a
+suffix: the first whose `sniff` knows the first bytes is taken, else the last; put the particular first.
 """
 
 from __future__ import annotations
@@ -147,7 +147,9 @@ def choose_writer(path: str, kind: str | None, content: Content) -> tuple[Format
     writers = [f for f in candidates if f.write is not None]
     if not writers:
         names = ", ".join(s for f in formats().values() if f.write is not None for s in f.suffixes)
-        raise InputError(f"{suffix or candidates[0].name} can be read, not written", hint=f"these can: {names}")
+        raise InputError(
+            f"{suffix or candidates[0].name} can be read, not written", hint=f"these can: {names}"
+        )
     return writers[-1], suffix
 
 
@@ -196,7 +198,8 @@ def _other_content(wanted: Format, known: list[Format], head: bytes) -> InputErr
         what, hint = "it is UTF-16 text", "save it as UTF-8"
     elif known:
         what = f"it looks like {known[0].name} ({known[0].holds})"
-        hint = f"give it a suffix of that format ({', '.join(known[0].suffixes[:3])}), or say --from {known[0].name}"
+        suffixes = ", ".join(known[0].suffixes[:3])
+        hint = f"give it a suffix of that format ({suffixes}), or say --from {known[0].name}"
     else:
         what = "it is " + (_nature(head).strip(" :") or "something else")
         hint = "check that it is the right file, and whole"

@@ -1,4 +1,4 @@
-"""Where bytes come from: a file, standard input or a stream, or bytes in memory; all refusals in one place."""
+"""Where bytes come from: a file, standard input or a stream, or memory; all refusals in one place."""
 
 from __future__ import annotations
 
@@ -184,6 +184,6 @@ def check_unpacked(unpacked: int, packed: int) -> None:
     """
     if unpacked > max(UNPACKED_FLOOR, UNPACKED_RATIO * packed):
         raise InputError(
-            f"{packed} bytes unpack to {unpacked} or more, beyond {UNPACKED_RATIO} times the size of the file",
+            f"{packed} bytes unpack to {unpacked} or more, over {UNPACKED_RATIO} times the file's size",
             hint="if that is meant, unpack it and give the unpacked file",
         )

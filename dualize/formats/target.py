@@ -89,7 +89,9 @@ def _check_target(path: str, force: bool) -> None:
     if os.path.isdir(path):
         raise InputError("this is a directory, not a file", path, "name a file in it")
     if os.path.lexists(path) and not force and not _special(path):
-        raise InputError("the file exists already", path, "give another name, or overwrite it: --force, force=True")
+        raise InputError(
+            "the file exists already", path, "give another name, or overwrite it: --force, force=True"
+        )
 
 
 def _special(path: str) -> bool:
@@ -100,7 +102,9 @@ def _special(path: str) -> bool:
 def _unwritable(path: str, error: OSError) -> InputError:
     kind = error.errno
     if kind in FULL or any(f"errno = {n}," in str(error) for n in FULL):
-        return InputError("there is no room for the file; nothing was written", path, "make room, or write elsewhere")
+        return InputError(
+            "there is no room for the file; nothing was written", path, "make room, or write elsewhere"
+        )
     if isinstance(error, FileNotFoundError):
         return InputError("there is no such directory", os.path.dirname(path) or path, "make it first")
     if isinstance(error, PermissionError) or kind == errno.EROFS:

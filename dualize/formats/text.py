@@ -5,13 +5,14 @@
     1, 2, 3, 4      # blanks or commas
 
 Labels are integers (``[+-]?[0-9]+`` within 64 bits), or, if any label of the file is no integer, words; in a
-file of words a token that reads as a number (``4.5``, ``1e3``, an integer beyond 64 bits) is refused, for it is
-more likely a slip.  ``#`` begins a comment; empty lines, any line ends and a byte-order mark do not matter.
+file of words a token that reads as a number (``4.5``, ``1e3``, an integer beyond 64 bits) is refused, for it
+is more likely a slip.  ``#`` begins a comment; empty lines, any line ends and a byte-order mark do not
+matter.
 
 The text holds labels only: coordinates, and gluings that labels do not determine, need another format.
 
-A compiled kernel reads large files of integers; whatever it cannot read goes to the exact scanner, which reads
-words, and says what is wrong and in which line.
+A compiled kernel reads large files of integers; whatever it cannot read goes to the exact scanner, which
+reads words, and says what is wrong and in which line.
 """
 
 from __future__ import annotations
@@ -20,6 +21,7 @@ import re
 from array import array
 from collections.abc import Iterator
 from io import BytesIO, TextIOWrapper
+from itertools import pairwise
 
 import numpy as np
 
@@ -94,7 +96,7 @@ def parse_integers(data: bytes, threads: int | None = None) -> np.ndarray | None
     parts = run.threads if run.compiled else 1
     ends = [_line_start(data, start + (len(data) - start) * p // parts) for p in range(1, parts)]
     cuts = [start, *ends, len(data)]
-    ranges = list(zip(cuts[:-1], cuts[1:], strict=True))
+    ranges = list(pairwise(cuts))
     room = [data.count(b"\n", lo, hi) + data.count(b"\r", lo, hi) + 1 for lo, hi in ranges]
     out = np.empty(sum(room) * width, dtype=np.int64)  # untouched where there are comments and empty lines
     begin = [sum(room[:p]) * width for p in range(len(room))]
@@ -152,7 +154,9 @@ def scan(data: bytes) -> tuple[np.ndarray, tuple[str, ...] | None]:
                 )
         numbers.extend([index.setdefault(token, len(index)) for token in tokens])
     if not width:
-        raise InputError("there is no simplex in the file", hint="write the labels of one simplex in each line")
+        raise InputError(
+            "there is no simplex in the file", hint="write the labels of one simplex in each line"
+        )
     rows = np.frombuffer(numbers, dtype=np.int64).reshape(-1, width)
     names: tuple[str, ...] | None = None
     if all(map(INTEGER.fullmatch, index)):
@@ -220,7 +224,9 @@ def _lines(data: bytes) -> Iterator[tuple[int, list[str]]]:
             data.decode("utf-8-sig")
         except UnicodeDecodeError as error:
             line = len(re.findall(rb"\r\n|\r|\n", data[: error.start])) + 1
-        raise InputError("this is no UTF-8 text", f"line {line}", "save it as UTF-8, or name its format") from None
+        raise InputError(
+            "this is no UTF-8 text", f"line {line}", "save it as UTF-8, or name its format"
+        ) from None
 
 
 def _integer(token: str) -> int | None:
@@ -245,9 +251,13 @@ def _reads_as_number(token: str) -> bool:
 def _number_refused(data: bytes, token: str) -> InputError:
     where = f"line {_line_of(data, token)}: {_show([token])}"
     if INTEGER.fullmatch(token):
-        hint = "labels lie between -2**63 and 2**63 - 1; number them anew, or write them as words (v1, v2, ...)"
+        hint = (
+            "labels lie between -2**63 and 2**63 - 1; number them anew, or write them as words (v1, v2, ...)"
+        )
         return InputError("a label is beyond 64 bits", where, hint)
-    hint = "labels are integers, or words that do not read as numbers; coordinates go into JSON or a mesh format"
+    hint = (
+        "labels are integers, or words that do not read as numbers; coordinates go into JSON or a mesh format"
+    )
     return InputError("a label is a number but no integer", where, hint)
 
 

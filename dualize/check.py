@@ -15,7 +15,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from .form import POINTS, check_form, compare, entry, wrong
+from .form import COLOURS, POINTS, check_form, compare, entry, wrong
 from .kernels import checks as rules
 from .kernels import engine
 from .kernels.permutations import permutations_of
@@ -137,6 +137,7 @@ def check_skeleton(skeleton: Skeleton, *, threads: int | None = None) -> None:
     _check_labels(work)
     _check_singular(work)
     _check_points(work)
+    _check_colours(work)
 
 
 # -- the tables against each other -----------------------------------------------------------------
@@ -228,8 +229,8 @@ def _check_edges(work: _Work) -> None:
 def _check_components(work: _Work) -> None:
     """Components, and that the orientation was spread breadth first: the edges it went over have no twist."""
     v = work.size["V"]
-    component, via = np.full(v, -1, dtype=work.ids), np.empty(v, dtype=work.ids)
-    queue = np.empty(v, dtype=work.ids)
+    component, queue = np.full(v, -1, dtype=work.ids), np.empty(v, dtype=work.ids)
+    via: np.ndarray = np.empty(v, dtype=work.ids)
     parts = work.run(rules.breadth_first, work.across, component, via, queue, work.axes)
     compare(
         work.skeleton,
@@ -239,8 +240,8 @@ def _check_components(work: _Work) -> None:
     )
     if parts != work.counts["components"]:
         raise wrong(f"it is {work.counts['components']}, but the edges make it {parts}", "counts/components")
-    twist: np.ndarray = work["edges/twist"]
-    tree = work["vertices/edge"].ravel()[via[via >= 0]]
+    twist = work["edges/twist"]
+    tree: np.ndarray = work["vertices/edge"].ravel()[via[via >= 0]]
     if twist[tree].any():
         e = int(tree[twist[tree] != 0].min())
         why = "the orientation is spread over this edge, breadth first from the component's smallest vertex"
@@ -464,3 +465,22 @@ def _glued_points(work: _Work) -> dict[str, np.ndarray]:
     sign = np.array([0, 1, -1, 0], dtype=np.int8)[reached]  # upwards, downwards, both ways
     tables = point.reshape(v, k), segment.reshape(v, w), sign.reshape(v, w)
     return dict(zip(POINTS, tables, strict=True))
+
+
+# -- colours ---------------------------------------------------------------------------------------
+
+
+def _check_colours(work: _Work) -> None:
+    """Colours are the numbers of slots and corners, which every gluing then keeps."""
+    s = work.skeleton
+    if COLOURS[0] not in s:
+        return
+    turned = np.flatnonzero((work.across >= 0) & (work.rank != 0))
+    if len(turned):
+        edge = int(s["vertices/edge"].ravel()[turned[0]])
+        raise entry(s, "colours/edge", edge, "in a coloured skeleton every edge keeps the corners' numbers")
+    source, target = s["edges/source"], s["edges/target"]
+    slot = np.where(source[:, 0] >= 0, source[:, 1], target[:, 1])
+    compare(s, "colours/edge", slot, "the edge lies at slot {wanted}")
+    wedge = s["faces/wedge"][s["faces/vertex_offsets"][:-1]]
+    compare(s, "colours/face", work.slots[wedge], "by the wedges of the face it is {wanted}")

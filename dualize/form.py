@@ -15,10 +15,11 @@ from .errors import SkeletonError
 from .layout import COUNTS, FLAGS, TABLES, Table, dtype_of, id_dtype, sizes
 from .skeleton import Skeleton
 
-__all__ = ["LABELS", "POINTS", "check_form", "compare", "entry", "wrong"]
+__all__ = ["COLOURS", "LABELS", "POINTS", "check_form", "compare", "entry", "wrong"]
 
 LABELS = ("vertices/corners", "nodes/corners", "links/corners")
 POINTS = ("vertices/point", "vertices/segment", "vertices/segment_sign")
+COLOURS = ("colours/edge", "colours/face")
 
 
 def check_form(skeleton: Skeleton) -> None:
@@ -171,6 +172,7 @@ def _check_presence(skeleton: Skeleton) -> None:
     together(always, True, "every skeleton has it", "")
     together(LABELS, any(name in have for name in LABELS), "there are labels", "")
     together(POINTS, any(name in have for name in POINTS), "there are points or segments", "")
+    together(COLOURS, any(name in have for name in COLOURS), "there are colours", "")
     together(
         ["faces/singular"],
         bool(skeleton.flags["singular"]),

@@ -32,7 +32,7 @@ class Table(NamedTuple):
     name: str
     shape: tuple[str | int, ...]
     kind: str
-    presence: str  # "always", "labels" (labelled input only), "singular", or "asked"
+    presence: str  # "always", "labels" (labelled input only), "singular", "coloured", or "asked"
     meaning: str
 
 
@@ -78,6 +78,8 @@ TABLES: dict[str, Table] = {
         Table("vertices/point", ("V", "K"), "point", "asked", "class of the triangulation's vertices"),
         Table("vertices/segment", ("V", "W"), "segment", "asked", "class of each 1-simplex, pairs in order"),
         Table("vertices/segment_sign", ("V", "W"), "segment_sign", "asked", "+1, -1 against the first, or 0"),
+        Table("colours/edge", ("E",), "slot", "coloured", "colour of each edge: the slot at either end"),
+        Table("colours/face", ("F", 2), "slot", "coloured", "the two colours of each face, ascending"),
         Table("coordinates/point", ("P", "A"), "coordinate", "asked", "one chart for all"),
         Table("coordinates/corner", ("V", "K", "A"), "coordinate", "asked", "one chart per simplex"),
         Table("coordinates/period", ("A",), "coordinate", "asked", "period of each axis, 0 = none"),

@@ -24,6 +24,8 @@ from .kernels.permutations import permutations_of
 if TYPE_CHECKING:
     from os import PathLike
 
+    import networkx
+
 __all__ = ["Coordinates", "Triangulation"]
 
 SHOWN = 10  # offenders of one kind that an error names
@@ -290,6 +292,13 @@ class Triangulation:
             coordinates=coordinates,
         )
 
+    @classmethod
+    def from_coloured_graph(cls, graph: networkx.Graph, *, dimension: int | None = None) -> Triangulation:
+        """The triangulation of a coloured graph; see `dualize.coloured.from_coloured_graph`."""
+        from .coloured import from_coloured_graph
+
+        return from_coloured_graph(graph, dimension=dimension)
+
     # -- what it is --------------------------------------------------------------------------------
 
     @property
@@ -321,6 +330,12 @@ class Triangulation:
         from .boundary import boundary_of
 
         return boundary_of(self, component, threads=threads)
+
+    def coloured_graph(self) -> networkx.MultiGraph:
+        """The coloured graph of a triangulation whose gluings keep colours; see `dualize.coloured`."""
+        from .coloured import coloured_graph
+
+        return coloured_graph(self)
 
     @property
     def keeps_colours(self) -> bool:

@@ -83,6 +83,7 @@ def gluing_of(skeleton: Skeleton, *, threads: int | None = None) -> Triangulatio
         corner_names=s.corner_names,
         coordinates=None if all(c is None for c in charts) else Coordinates(*charts),
         matched=labels is not None and _matched(labels, across, rank, threads),
+        coloured="colours/edge" in s and not rank[across >= 0].any(),
     )
 
 

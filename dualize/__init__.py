@@ -21,6 +21,7 @@ from typing import TYPE_CHECKING, Any
 from .build import build
 
 if TYPE_CHECKING:
+    from . import make
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
     from .formats import load, read
     from .skeleton import Skeleton
@@ -42,6 +43,9 @@ _HOMES = {
     "read": "formats",
 }
 
+# rooms that are used under their own names, imported on first use
+_ROOMS = ("make",)
+
 __all__ = [
     "Coordinates",
     "DualizeError",
@@ -54,11 +58,14 @@ __all__ = [
     "__version__",
     "build",
     "load",
+    "make",
     "read",
 ]
 
 
 def __getattr__(name: str) -> Any:
+    if name in _ROOMS:
+        return import_module(f".{name}", __name__)
     if name in _HOMES:
         value = getattr(import_module(f".{_HOMES[name]}", __name__), name)
         globals()[name] = value
@@ -67,4 +74,4 @@ def __getattr__(name: str) -> Any:
 
 
 def __dir__() -> list[str]:
-    return sorted([*globals(), *_HOMES])
+    return sorted([*globals(), *_HOMES, *_ROOMS])

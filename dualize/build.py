@@ -7,6 +7,7 @@ same on every run and for every number of threads.
 from __future__ import annotations
 
 import os
+from collections.abc import Callable
 from functools import partial
 from typing import NamedTuple
 
@@ -15,15 +16,25 @@ import numpy as np
 from .errors import TriangulationError
 from .kernels import Engine, engine
 from .kernels.classes import join_pairs, join_points, join_segments, number_classes, number_segments
-from .kernels.faces import fill_edge_faces, pack_rows, place_faces, walk_ridges
+from .kernels.faces import (
+    fill_edge_faces,
+    label_nodes,
+    label_ridges,
+    pack_rows,
+    place_faces,
+    walk_ridges,
+)
 from .kernels.orient import count_edges, fill_edges, spread_orientation
 from .kernels.permutations import Permutations, permutations_of
-from .kernels.repeats import any_repeat, fill_keys, mix_rows
+from .kernels.repeats import any_repeat, fill_keys, mix_ridges
 from .layout import id_dtype, wedge_pairs
+from .memory import check_memory
 from .skeleton import Skeleton
 from .triangulation import SHOWN, Triangulation
 
 __all__ = ["build"]
+
+WEIGHED_FROM = 100_000  # simplices from which memory is estimated before the work
 
 
 def build(
@@ -31,6 +42,7 @@ def build(
     *,
     keep_singular: bool = False,
     points: bool = False,
+    any_size: bool = False,
     threads: int | None = None,
 ) -> Skeleton:
     """The oriented dual two-complex of a triangulation, with its boundary graph.
@@ -45,6 +57,8 @@ def build(
     points : bool
         Add the classes of the triangulation's own vertices and 1-simplices: ``vertices/point``,
         ``vertices/segment`` and ``vertices/segment_sign``.
+    any_size : bool
+        Begin even if there does not seem to be enough memory.
     threads : int, optional
         At most so many threads; the result does not depend on it.
 
@@ -52,6 +66,8 @@ def build(
     ------
     TriangulationError
         If the complex is singular in one of these ways and `keep_singular` is false; the places are named.
+    LimitError
+        If there is not enough memory, with the figures, unless `any_size`.
 
     Notes
     -----
@@ -65,6 +81,8 @@ def build(
     <Skeleton 4D: 1 vertices, 0+5 edges, 0+10 faces, 5 nodes, 10 links, 1 component(s)>
     """
     t = triangulation
+    if not any_size and len(t) >= WEIGHED_FROM:
+        check_memory(len(t), int((t.across < 0).sum()), t.dimension, t.corners is not None)
     work = _Work(t, engine(len(t), threads))
     twins = _twins(t)
     if len(twins) and not keep_singular:
@@ -76,9 +94,8 @@ def build(
     orientation, component, parts = _orient(work)
     edges = _edges(work, orientation)
     faces = _faces(work, orientation, edges)
-    ridges = None if t.corners is None else _ridges(work, faces)
-    singular = _singular(work, faces, ridges, keep_singular)
-    boundary = _boundary(work, edges, faces, ridges)
+    singular = _singular(work, faces, keep_singular)
+    boundary = _boundary(work, edges, faces)
 
     v, interior, nodes = len(t), edges.interior, len(edges.arrays["nodes/vertex"])
     external = len(faces.twists) - faces.internal
@@ -113,6 +130,8 @@ def build(
         )
     if points:
         tables |= _points(work)
+    if t.coloured:
+        tables |= _colours(work, tables)
     if t.coordinates is not None:
         for name in ("point", "corner", "period"):
             if (array := getattr(t.coordinates, name)) is not None:
@@ -311,15 +330,17 @@ def _faces(work: _Work, orientation: np.ndarray, edges: _Edges) -> _Faces:
     wedge_direction = np.empty((n, w), dtype=np.int8)
     holonomy = np.concatenate([part.bits for part in rings]) & 1 == 1
     out = (*a.values(), twists, wedge_face.ravel(), wedge_direction.ravel(), w)
-    calls = []
+    calls: list[Callable[[], None]] = []
     face = visit = step = 0
     for lead, parts in ((0, rings), (1, chains)):
-        for part in parts:
-            calls.append((*part, *out, len(part.length), face, visit, step, lead))
+        for number, part in enumerate(parts):
+            calls.append(partial(_place, run, parts, number, out, face, visit, step, lead))
             face += len(part.length)
             visit += len(part.vertex)
             step += len(part.edge)
-    run.each(place_faces, calls)
+    del part  # every part is let go of once it is in place
+    run.prepare(place_faces)
+    run.tasks(calls)
     a["wedges/face"], a["wedges/direction"] = wedge_face, wedge_direction
     a["edges/face"] = np.empty((total, d), dtype=ids)
     a["edges/face_sign"] = np.empty((total, d), dtype=np.int8)
@@ -341,7 +362,15 @@ def _faces(work: _Work, orientation: np.ndarray, edges: _Edges) -> _Faces:
     return _Faces(a, internal, holonomy, twists)
 
 
-def _boundary(work: _Work, edges: _Edges, faces: _Faces, ridges: np.ndarray | None) -> dict[str, np.ndarray]:
+def _place(
+    run: Engine, parts: list, number: int, out: tuple, face: int, visit: int, step: int, lead: int
+) -> None:
+    part = parts[number]
+    run.here(place_faces, *part, *out, len(part.length), face, visit, step, lead)
+    parts[number] = None
+
+
+def _boundary(work: _Work, edges: _Edges, faces: _Faces) -> dict[str, np.ndarray]:
     """The tables of nodes and links.  A link runs from the node where its face ends to where it starts."""
     arrays, internal = faces.arrays, faces.internal
     vertex, slot = edges.arrays["nodes/vertex"], edges.arrays["nodes/slot"]
@@ -364,20 +393,23 @@ def _boundary(work: _Work, edges: _Edges, faces: _Faces, ridges: np.ndarray | No
         "links/face": np.arange(internal, internal + len(source), dtype=work.ids),
         "links/twist": faces.twists[internal:],
     }
-    if work.t.corners is not None and ridges is not None:
-        others = np.array([[c for c in range(work.k) if c != i] for i in range(work.k)])
-        out["nodes/corners"] = np.take_along_axis(work.t.corners[vertex], others[slot], axis=1)
-        out["links/corners"] = np.sort(ridges[internal:], axis=1)
+    if work.t.corners is not None:
+        out["nodes/corners"] = np.empty((nodes, work.d), dtype=np.int64)
+        arguments = (work.t.corners.ravel(), vertex, slot, out["nodes/corners"].ravel(), work.axes)
+        work.run.split(label_nodes, nodes, *arguments)
+        out["links/corners"] = _ridges(work, faces, internal)
     return out
 
 
-def _ridges(work: _Work, faces: _Faces) -> np.ndarray:
-    """Labels of the ridge of every face, shape (F, D - 1), read at its first passage."""
+def _ridges(work: _Work, faces: _Faces, begin: int = 0) -> np.ndarray:
+    """Labels of the ridges of the faces from `begin` on, ascending, int64, shape (F, D - 1)."""
     assert work.t.corners is not None
-    first = faces.arrays["faces/vertex_offsets"][:-1]
-    others = np.array([[c for c in range(work.k) if c not in pair] for pair in work.slots.tolist()])
-    vertex, wedge = faces.arrays["faces/vertex"][first], faces.arrays["faces/wedge"][first]
-    return np.take_along_axis(work.t.corners[vertex], others[wedge], axis=1)
+    a = faces.arrays
+    offsets = a["faces/vertex_offsets"][begin:-1]
+    labels = np.empty((len(offsets), work.d - 1), dtype=np.int64)
+    tables = (work.t.corners.ravel(), a["faces/vertex"], a["faces/wedge"], offsets, work.slots.ravel())
+    work.run.split(label_ridges, len(offsets), *tables, labels.ravel(), work.axes)
+    return labels
 
 
 # -- what is refused, or kept on request ---------------------------------------------------------
@@ -393,15 +425,14 @@ def _twins(t: Triangulation) -> np.ndarray:
     return lower[(t.corners[there[lower]] == t.corners[lower]).all(axis=1)]
 
 
-def _singular(
-    work: _Work, faces: _Faces, ridges: np.ndarray | None, keep_singular: bool
-) -> np.ndarray | None:
+def _singular(work: _Work, faces: _Faces, keep_singular: bool) -> np.ndarray | None:
     """``faces/singular``, None where every face is regular; refused unless kept on request."""
-    pinches = ridges is not None and work.t.matched and _has_repeats(work.run, ridges)
+    pinches = work.t.matched and _has_pinches(work, faces)
     if not pinches and not faces.holonomy.any():
         return None
     singular = np.zeros(len(faces.twists), dtype=np.int8)
     singular[: faces.internal] = faces.holonomy
+    ridges = _ridges(work, faces) if work.t.corners is not None else None
     if pinches and ridges is not None:
         _, group, size = np.unique(ridges, axis=0, return_inverse=True, return_counts=True)
         singular[size[group.ravel()] > 1] += 2
@@ -444,27 +475,40 @@ def _refuse(what: str, places: list[str], count: int) -> TriangulationError:
     )
 
 
-def _has_repeats(run: Engine, rows: np.ndarray) -> bool:
-    """Whether a row of labels occurs more than once."""
-    n, m = rows.shape
-    axes = tuple(range(m))
-    factors = np.frombuffer(os.urandom(8 * m), dtype=np.int64) >> 1 | 1
+def _has_pinches(work: _Work, faces: _Faces) -> bool:
+    """Whether one set of ridge labels belongs to several faces."""
+    assert work.t.corners is not None
+    run, n = work.run, len(faces.twists)
+    a = faces.arrays
+    factors = np.frombuffer(os.urandom(8 * work.k), dtype=np.int64) >> 1 | 1
     shift = 63 - max(1, (n // 16).bit_length())
     key = np.empty(n, dtype=np.int64)
     size = np.zeros(1 << (63 - shift), dtype=np.int64)
-    run(mix_rows, rows.ravel(), factors, key, size, shift, axes, n)
+    corners, slots = work.t.corners.ravel(), work.slots.ravel()
+    tables = (a["faces/vertex"], a["faces/wedge"], a["faces/vertex_offsets"])
+    run(mix_ridges, corners, *tables, slots, factors, key, size, shift, work.axes, n)
     start = np.zeros(len(size) + 1, dtype=np.int64)
     np.cumsum(size, out=start[1:])
     entry = np.empty(n, dtype=np.int64)
     run(fill_keys, key, start[:-1].copy(), entry, shift, n)
     if not any(run.split(any_repeat, len(size), start, entry)):
         return False
-    # equal keys are equal rows but for an accident
-    return len(np.unique(rows, axis=0)) < n
+    # equal keys are equal ridges but for an accident
+    return len(np.unique(_ridges(work, faces), axis=0)) < n
 
 
 def _labels(t: Triangulation, labels: np.ndarray) -> str:
     return " ".join(map(str, t.named(labels)))
+
+
+def _colours(work: _Work, tables: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """The tables of colours; gluings keep slots, so one end of an edge tells, and one wedge of a face."""
+    source, target = tables["edges/source"], tables["edges/target"]
+    first = tables["faces/vertex_offsets"][:-1]
+    return {
+        "colours/edge": np.where(source[:, 0] >= 0, source[:, 1], target[:, 1]),
+        "colours/face": work.slots[tables["faces/wedge"][first]],
+    }
 
 
 # -- points and segments -------------------------------------------------------------------------

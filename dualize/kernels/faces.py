@@ -14,7 +14,7 @@ What a step needs to know of a simplex stands in one *row* of 16 words, a cache 
     bytes 10 .. 10+W-1 1 where the wedge needs no walk of its own any more
 """
 
-__all__ = ["fill_edge_faces", "pack_rows", "place_faces", "walk_ridges"]
+__all__ = ["fill_edge_faces", "label_nodes", "label_ridges", "pack_rows", "place_faces", "walk_ridges"]
 
 
 def pack_rows(across, rank, edge, leaves, twist, words, octets, width, axes, lo, hi):
@@ -339,4 +339,37 @@ def fill_edge_faces(
                 along = 1 if slot < corner else -1
             edge_face[place] = wedge_face[wedge]
             edge_sign[place] = along * wedge_direction[wedge]
+    return 0
+
+
+def label_nodes(corners, vertex, slot, labels, axes, lo, hi):
+    """Labels of the boundary facets `lo` to `hi` in reference order, into `labels` (B, D)."""
+    k = len(axes)
+    for n in range(lo, hi):
+        out = n * (k - 1)
+        for c in range(k):
+            if c != slot[n]:
+                labels[out] = corners[vertex[n] * k + c]
+                out += 1
+    return 0
+
+
+def label_ridges(corners, vertex, wedge, offsets, slots, labels, axes, lo, hi):
+    """Labels of the ridges of the faces `lo` to `hi`, ascending, read at their first passages."""
+    k = len(axes)
+    for f in range(lo, hi):
+        visit = offsets[f]
+        s = vertex[visit]
+        w = wedge[visit]
+        begin = f * (k - 2)
+        out = begin
+        for c in range(k):
+            if c != slots[2 * w] and c != slots[2 * w + 1]:
+                x = corners[s * k + c]
+                at = out
+                while at > begin and labels[at - 1] > x:
+                    labels[at] = labels[at - 1]
+                    at -= 1
+                labels[at] = x
+                out += 1
     return 0

@@ -1,21 +1,26 @@
-"""Kernels that find rows of labels that occur twice, by a mixed key and buckets of its leading bits."""
+"""Kernels that find out whether a ridge label set belongs to several faces, by mixed keys in buckets."""
 
-__all__ = ["any_repeat", "fill_keys", "mix_rows"]
+__all__ = ["any_repeat", "fill_keys", "mix_ridges"]
 
 
-def mix_rows(rows, factors, key, size, shift, axes, n):
-    """A 64-bit key of each row (n, len(axes)) and how many keys fall into each bucket ``key >> shift``.
+def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, size, shift, axes, n):
+    """A 63-bit key of the ridge labels of each face, and how many each bucket ``key >> shift`` gets.
 
-    The `factors` are drawn at random for each run, so no choice of labels can make different rows collide
-    on purpose; equal rows always have equal keys.
+    The labels are read at the first passage of the face.  The `factors` are drawn at random for each run, so
+    no choice of labels makes different ridges collide on purpose; equal ridges always have equal keys.
     """
-    m = len(axes)
-    for x in range(n):
+    k = len(axes)
+    for f in range(n):
+        s = vertex[offsets[f]]
+        w = wedge[offsets[f]]
         mixed = 0
-        for c in range(m):
-            mixed = ((mixed ^ rows[x * m + c]) * factors[c]) & 0x7FFFFFFFFFFFFFFF
-            mixed ^= mixed >> 29
-        key[x] = mixed
+        rank = 0
+        for c in range(k):
+            if c != slots[2 * w] and c != slots[2 * w + 1]:
+                mixed = ((mixed ^ corners[s * k + c]) * factors[rank]) & 0x7FFFFFFFFFFFFFFF
+                mixed ^= mixed >> 29
+                rank += 1
+        key[f] = mixed
         size[mixed >> shift] += 1
     return 0
 

@@ -1,0 +1,438 @@
+"""Subdivisions: stellar, barycentric of complexes and of gluing tables, and edgewise refinement."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from functools import cache
+from itertools import permutations, product
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from ..errors import InputError
+from ..kernels.permutations import permutations_of
+from ..topology.classes import classes, corner_subsets
+from ..triangulation import Coordinates, Triangulation
+from .common import (
+    Changed,
+    as_written,
+    as_written_chart,
+    averages,
+    by_labels,
+    charts,
+    check_room,
+    fresh_labels,
+    fresh_words,
+    label_numbers,
+    labelled,
+    labels_name_simplices,
+    need_labels,
+    number,
+    rows_with,
+    show,
+)
+
+__all__ = ["derived", "refine", "stellar"]
+
+
+# -- one new point ---------------------------------------------------------------------------------
+
+
+def stellar(triangulation: Triangulation, at: Sequence[Any], *, label: int | str | None = None) -> Changed:
+    """Subdivide a simplex of any dimension by a point inside it, and with it all simplices around it.
+
+    Every top simplex that contains the simplex A is replaced by its |A| pieces with the new point in the
+    place of one corner of A.  The simplex may lie in the boundary, which is then subdivided too.
+
+    Parameters
+    ----------
+    triangulation : Triangulation
+        A labelled complex.
+    at : sequence of labels
+        A; at least two labels.
+    label : int or str, optional
+        Of the new point; by default the number after the largest label, or ``new0``.
+
+    Examples
+    --------
+    >>> t = Triangulation.from_facets([[0, 1, 2], [1, 2, 3]])
+    >>> stellar(t, [1, 2]).triangulation.corners.tolist()
+    [[0, 2, 4], [0, 1, 4], [2, 3, 4], [1, 3, 4]]
+    """
+    t = triangulation
+    corners = need_labels(t, "a stellar subdivision")
+    a = label_numbers(t, list(at))
+    if len(a) < 2:
+        raise InputError("a stellar subdivision needs at least two labels", show(t, a))
+    star = rows_with(corners, a)
+    if not len(star):
+        raise InputError("these labels are no simplex of the complex", show(t, a))
+    from .moves import _new_label
+
+    words = None if t.corner_names is None else list(t.corner_names)
+    if words is not None:
+        new = len(words)
+        words.append(fresh_words(words, 1)[0] if label is None else str(_new_label(t, label)))
+        name: int | str = words[-1]
+    else:
+        new = int(fresh_labels(t, 1)[0]) if label is None else int(_new_label(t, label))
+        name = new
+    rows = as_written(t)
+    inside = np.zeros(len(t), dtype=bool)
+    inside[star] = True
+    pieces = np.where(inside, len(a), 1)
+    refined_from = np.repeat(np.arange(len(t)), pieces)
+    out = rows[refined_from]
+    piece = np.arange(len(out)) - np.repeat(np.cumsum(pieces) - pieces, pieces)
+    changed = inside[refined_from]
+    gone = np.array(sorted(a), dtype=np.int64)[piece[changed]]
+    out[changed] = np.where(out[changed] == gone[:, None], new, out[changed])
+    coordinates = _with_point(t, a, rows, refined_from, changed, piece, new)
+    notes: tuple[str, ...] = ()
+    if t.coordinates is not None and coordinates is None:
+        notes = ("coordinates dropped: the new label has no row in their table",)
+    return Changed(labelled(out, words, coordinates), refined_from, [name], notes)
+
+
+def _with_point(
+    t: Triangulation,
+    a: list[int],
+    rows: np.ndarray,
+    refined_from: np.ndarray,
+    changed: np.ndarray,
+    piece: np.ndarray,
+    new: int,
+) -> Coordinates | None:
+    c = t.coordinates
+    if c is None:
+        return None
+    if c.point is not None:
+        if not 0 <= new <= len(c.point):
+            return None
+        middle = averages(c.point[sorted(a)], c.period)
+        return c._replace(point=np.concatenate([c.point, middle[None]]))
+    assert c.corner is not None
+    chart = as_written_chart(t, c.corner)[refined_from]
+    order = rows[refined_from]
+    gone = order == np.array(sorted(a), dtype=np.int64)[np.where(changed, piece, 0)][:, None]
+    mine = np.isin(order, a)
+    weight = mine / np.maximum(mine.sum(axis=1, keepdims=True), 1)
+    middle = (chart * weight[:, :, None]).sum(axis=1)
+    put = gone & changed[:, None]
+    return c._replace(corner=np.where(put[:, :, None], middle[:, None, :], chart))
+
+
+# -- subdivisions by a template --------------------------------------------------------------------
+
+
+class Template(NamedTuple):
+    """How every simplex is cut, the same way for all.
+
+    Attributes
+    ----------
+    weight : ndarray of int64, shape (P, K)
+        The points of the pieces as barycentric coordinates, which add up to one number.
+    piece : ndarray of int64, shape (Q, K)
+        The points of each piece.
+    sign : ndarray of int8, shape (Q,)
+        Orientation of the piece in the simplex.
+    """
+
+    weight: np.ndarray
+    piece: np.ndarray
+    sign: np.ndarray
+
+
+def derived(triangulation: Triangulation, times: int = 1) -> Changed:
+    """The barycentric subdivision, once or several times, of a complex or a gluing table.
+
+    Every simplex falls into (D + 1)! pieces, one for each order of its corners: corner i of a piece is the
+    barycentre of the first i + 1 of them.
+
+    Parameters
+    ----------
+    triangulation : Triangulation
+        Labelled or a gluing table.
+    times : int
+        How often, at least 1.
+
+    Returns
+    -------
+    Changed
+        A labelled complex when it is a simplicial complex: always from a labelled one, and from a gluing
+        table at the latest after two times (if no simplex is identified with itself other than by the
+        identity, and no top simplices share all their corners beyond that).  Labels of a complex stay, the
+        barycentres get new ones.
+
+    References
+    ----------
+    J. R. Munkres, Elements of Algebraic Topology (1984), section 15.
+
+    Examples
+    --------
+    >>> derived(Triangulation.from_facets([[0, 1, 2]])).triangulation
+    <Triangulation 2D: 6 simplices, labelled, 6 boundary facets>
+    """
+    t = triangulation
+    number(times, "times", 1)
+    pieces = len(permutations_of(t.dimension).image)
+    check_room(len(t) * pieces**times, t.dimension)
+    result = _derived(t)
+    for _ in range(times - 1):
+        again = _derived(result.triangulation)
+        result = Changed(again.triangulation, result.refined_from[again.refined_from])
+    return Changed(result.triangulation, result.refined_from, _new_names(t, result.triangulation))
+
+
+def refine(triangulation: Triangulation, factor: int) -> Changed:
+    """The edgewise refinement: every segment falls into `factor` parts, every simplex into ``factor**D``.
+
+    In the order of its corners a simplex is one of the path simplices of a cube; the pieces are the path
+    simplices of the cubes of the finer grid that lie in it.  All of them have the same volume, and faces are
+    refined likewise, so that neighbours fit.
+
+    Parameters
+    ----------
+    triangulation : Triangulation
+        Labelled (the order is that of the labels), or a gluing table whose gluings keep the order of the
+        corners.
+    factor : int
+        At least 1.
+
+    Raises
+    ------
+    InputError
+        If a gluing does not keep the order; the barycentric subdivision has only gluings that do.
+
+    References
+    ----------
+    H. Freudenthal, Simplizialzerlegungen von beschränkter Flachheit, Annals of Mathematics 43 (1942)
+    580-582; H. Edelsbrunner, D. R. Grayson, Edgewise subdivision of a simplex, Discrete Comput. Geom. 24
+    (2000) 707-719.
+
+    Examples
+    --------
+    >>> refine(Triangulation.from_facets([[0, 1, 2, 3]]), 2).triangulation
+    <Triangulation 3D: 8 simplices, labelled, 16 boundary facets>
+    """
+    t, d = triangulation, triangulation.dimension
+    number(factor, "factor", 1)
+    check_room(len(t) * factor**d, d)
+    tables = permutations_of(d)
+    slots = tables.image[t.rank, np.arange(d + 1)]
+    keeps = (t.across < 0) | (t.rank == tables.keeping[np.arange(d + 1), slots])
+    if not keeps.all():
+        s, i = np.argwhere(~keeps)[0].tolist()
+        raise InputError(
+            "a gluing does not keep the order of the corners, on which this refinement depends",
+            f"simplex {s}, slot {i}",
+            "subdivide barycentrically first (derived 1): its gluings all do",
+        )
+    template = _edgewise(d, factor)
+    across, rank = _glued(t, template)
+    result = _finish(t, template, across, rank)
+    return Changed(result.triangulation, result.refined_from, _new_names(t, result.triangulation))
+
+
+def _derived(t: Triangulation) -> Changed:
+    n, k = t.across.shape
+    tables = permutations_of(k - 1)
+    images = tables.image.astype(np.int64)
+    q = len(images)
+    across = np.empty((n, q, k), dtype=np.int64)
+    base = np.arange(n)[:, None] * q
+    for i in range(k - 1):
+        swapped = images.copy()
+        swapped[:, [i, i + 1]] = swapped[:, [i + 1, i]]
+        across[:, :, i] = base + tables.rank(swapped)
+    last = images[:, -1]
+    there = t.across[:, last].astype(np.int64)
+    turned = tables.compose[t.rank[:, last], np.arange(q)]
+    across[:, :, -1] = np.where(there >= 0, there * q + turned, -1)
+    rank = np.zeros((n * q, k), dtype=np.uint8)
+    return _finish(t, _barycentric(k - 1), across.reshape(-1, k), rank)
+
+
+@cache
+def _barycentric(d: int) -> Template:
+    k = d + 1
+    tables = permutations_of(d)
+    scale = int(np.lcm.reduce(np.arange(1, k + 1)))
+    subsets = [tuple(c) for m in range(1, k + 1) for c in corner_subsets(d, m).tolist()]
+    index = {c: p for p, c in enumerate(subsets)}
+    weight = np.zeros((len(subsets), k), dtype=np.int64)
+    for p, c in enumerate(subsets):
+        weight[p, list(c)] = scale // len(c)
+    piece = [[index[tuple(sorted(row[: i + 1]))] for i in range(k)] for row in tables.image.tolist()]
+    return Template(weight, np.array(piece), tables.sign)
+
+
+@cache
+def _edgewise(d: int, r: int) -> Template:
+    """Path simplices of the grid within r >= x_1 >= ... >= x_d >= 0; corner c of the simplex is x = (r^c, 0...)."""
+    index: dict[tuple[int, ...], int] = {}
+    pieces = []
+    for cube in product(range(r), repeat=d):
+        if any(a < b for a, b in zip(cube, cube[1:], strict=False)):
+            continue
+        for order in permutations(range(d)):
+            point = list(cube)
+            path = [tuple(point)]
+            for axis in order:
+                point[axis] += 1
+                path.append(tuple(point))
+            if all(a >= b for x in path for a, b in zip(x, x[1:], strict=False)):
+                pieces.append([index.setdefault(x, len(index)) for x in path])
+    x = np.array(list(index))
+    stairs = np.concatenate([np.full((len(x), 1), r), x, np.zeros((len(x), 1), dtype=np.int64)], axis=1)
+    weight = stairs[:, :-1] - stairs[:, 1:]
+    piece = np.array(pieces)
+    sign = np.round(np.linalg.det(weight[piece].astype(float) / r) * r**d).astype(np.int8)
+    return Template(weight, piece, sign)
+
+
+def _glued(t: Triangulation, template: Template) -> tuple[np.ndarray, np.ndarray]:
+    """The gluing table of the pieces, for gluings that keep the order of the corners."""
+    n, k = t.across.shape
+    tables = permutations_of(k - 1)
+    weight, piece, _ = template
+    q = len(piece)
+    facets: dict[frozenset, list[tuple[int, int]]] = {}
+    for a, row in enumerate(piece.tolist()):
+        for slot in range(k):
+            facets.setdefault(frozenset(row[:slot] + row[slot + 1 :]), []).append((a, slot))
+    across = np.full((n, q, k), -1, dtype=np.int64)
+    rank = np.zeros((n, q, k), dtype=np.uint8)
+    # facets of pieces on each facet of the simplex, by the weights of the other corners
+    outer: list[dict[frozenset, tuple[int, int]]] = [{} for _ in range(k)]
+
+    def images(row: Sequence, slot: int, other: Sequence, there: int) -> list[int]:
+        return [there if c == slot else other.index(x) for c, x in enumerate(row)]
+
+    base = np.arange(n) * q
+    for points, where in facets.items():
+        if len(where) == 2:
+            (a, i), (b, j) = where
+            one, two = piece[a].tolist(), piece[b].tolist()
+            for (a_, i_, row), (b_, j_, other) in (((a, i, one), (b, j, two)), ((b, j, two), (a, i, one))):
+                across[:, a_, i_] = base + b_
+                rank[:, a_, i_] = tables.rank(np.array(images(row, i_, other, j_)))
+        else:
+            on = next(c for c in range(k) if all(weight[p, c] == 0 for p in points))
+            key = frozenset(tuple(np.delete(weight[p], on).tolist()) for p in points)
+            outer[on][key] = where[0]
+    for i in range(k):
+        for j in range(k):
+            there = tables.image[t.rank[:, i], i]
+            rows = np.flatnonzero((t.across[:, i] >= 0) & (there == j))
+            if not len(rows):
+                continue
+            for key, (a, slot) in outer[i].items():
+                b, slot_there = outer[j][key]
+                one = [tuple(np.delete(weight[p], i).tolist()) for p in piece[a]]
+                two = [tuple(np.delete(weight[p], j).tolist()) for p in piece[b]]
+                one[slot] = two[slot_there] = ()
+                across[rows, a, slot] = t.across[rows, i].astype(np.int64) * q + b
+                rank[rows, a, slot] = tables.rank(np.array(images(one, slot, two, slot_there)))
+    return across.reshape(-1, k), rank.reshape(-1, k)
+
+
+def _finish(t: Triangulation, template: Template, across: np.ndarray, rank: np.ndarray) -> Changed:
+    """Labels where they name the simplices, and coordinates."""
+    n, k = t.across.shape
+    weight, piece, sign = template
+    q = len(piece)
+    refined_from = np.repeat(np.arange(n), q)
+    written = (t.written[:, None] * sign).ravel().astype(np.int8)
+    is_labelled = t.corners is not None and t.matched
+    point_of, words = _points(t, weight)
+    labels = point_of[:, piece].reshape(-1, k)
+    chart = charts(t)
+    period = None if t.coordinates is None else t.coordinates.period
+    fine = None
+    if chart is not None:
+        fine = np.einsum("pc,nca->npa", weight / weight[0].sum(), chart)
+    plain = Triangulation(across.astype(np.int32), rank, written)
+    if is_labelled or labels_name_simplices(plain, labels):
+        row = None
+        if fine is not None and int(labels.min()) >= 0 and int(labels.max()) < 8 * labels.size:
+            row = np.zeros((int(labels.max()) + 1, fine.shape[2]))
+            if t.coordinates is not None and t.coordinates.point is not None and is_labelled:
+                row[: len(t.coordinates.point)] = t.coordinates.point[: len(row)]
+            flat, first = np.unique(point_of, return_index=True)
+            row[flat] = fine.reshape(-1, fine.shape[2])[first]
+            keep_chart = t.coordinates is not None and t.coordinates.corner is not None
+            if keep_chart and not np.allclose(row[point_of], fine, rtol=0, atol=1e-9):
+                row = None  # the charts do not fit together to one
+        new = by_labels(across, rank, written, labels, words, row, period if row is not None else None)
+        if fine is not None and row is None:
+            order = np.argsort(labels if words is None else new_positions(labels, words), axis=1)
+            corner = np.take_along_axis(fine[:, piece].reshape(n * q, k, -1), order[:, :, None], axis=1)
+            new = _with(new, Coordinates(corner=corner, period=period))
+        return Changed(new, refined_from)
+    if fine is not None:
+        plain = _with(plain, Coordinates(corner=fine[:, piece].reshape(n * q, k, -1), period=period))
+    return Changed(plain, refined_from)
+
+
+def new_positions(labels: np.ndarray, words: Sequence[str]) -> np.ndarray:
+    """Labels as the positions that their words have in order."""
+    order = sorted(range(len(words)), key=words.__getitem__)
+    position = np.empty(len(words), dtype=np.int64)
+    position[order] = np.arange(len(order))
+    return position[labels]
+
+
+def _with(t: Triangulation, coordinates: Coordinates) -> Triangulation:
+    from .common import with_fields
+
+    return with_fields(t, coordinates=coordinates)
+
+
+def _points(t: Triangulation, weight: np.ndarray) -> tuple[np.ndarray, list[str] | None]:
+    """Label of each point of the template in each simplex, (N, P), and the words where labels are words."""
+    n, k = t.across.shape
+    out = np.empty((n, len(weight)), dtype=np.int64)
+    is_labelled = t.corners is not None and t.matched
+    support = weight > 0
+    size = support.sum(axis=1)
+    total = 0
+    for m in range(1, k + 1):
+        chosen = np.flatnonzero(size == m)
+        if not len(chosen):
+            continue
+        subsets = corner_subsets(k - 1, m)
+        column = {tuple(c): x for x, c in enumerate(subsets.tolist())}
+        columns = np.array([column[tuple(np.flatnonzero(support[p]).tolist())] for p in chosen])
+        parts, part = np.unique([weight[p][support[p]] for p in chosen], axis=0, return_inverse=True)
+        part = part.ravel()
+        if is_labelled and m == 1:
+            assert t.corners is not None
+            out[:, chosen] = t.corners[:, columns]
+            continue
+        if m == k:
+            numbers, count = np.arange(n)[:, None], n
+        elif is_labelled:
+            assert t.corners is not None
+            rows = t.corners[:, subsets].reshape(-1, m)
+            _, inverse = np.unique(rows, axis=0, return_inverse=True)
+            numbers, count = inverse.reshape(n, -1), int(inverse.max()) + 1
+        else:
+            found = classes(t, m)
+            numbers, count = found.number.astype(np.int64), found.count
+        out[:, chosen] = total + numbers[:, columns] * len(parts) + part
+        total += count * len(parts)
+    if not is_labelled:
+        return out, None
+    new = size > 1
+    if t.corner_names is None:
+        out[:, new] += int(fresh_labels(t, total)[0]) if total else 0
+        return out, None
+    out[:, new] += len(t.corner_names)
+    return out, [*t.corner_names, *fresh_words(t.corner_names, total)]
+
+
+def _new_names(before: Triangulation, after: Triangulation) -> list:
+    from .walk import new_labels_of
+
+    return new_labels_of(before, after)

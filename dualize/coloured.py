@@ -194,7 +194,7 @@ def from_coloured_graph(graph: networkx.Graph, *, dimension: int | None = None) 
     ----------
     graph : networkx graph
         Edges have an attribute ``colour`` (or ``color``), an integer from 0; directions do not count.  Where
-        all nodes are integers, simplices are numbered in their ascending order, else in the order of the graph.
+        all nodes are integers, simplices are numbered in their ascending order, else in that of the graph.
     dimension : int, optional
         D, where the colours are ``0 .. D``; by default the graph's attribute ``dimension``, else the largest
         colour of an edge.
@@ -245,8 +245,12 @@ def order_of_vertices(names: Sequence[Hashable]) -> tuple[list, dict]:
         From name to number.
     """
     if all(isinstance(x, int | np.integer) or (isinstance(x, str) and INTEGER.fullmatch(x)) for x in names):
-        names = sorted(names, key=lambda x: int(str(x)))
+        names = sorted(names, key=_integer)
     return list(names), {name: number for number, name in enumerate(names)}
+
+
+def _integer(name: Hashable) -> int:
+    return int(str(name))
 
 
 def colour_number(value: Any, where: str) -> int:
@@ -256,8 +260,8 @@ def colour_number(value: Any, where: str) -> int:
     ------
     InputError
     """
-    if isinstance(value, int | np.integer) and not isinstance(value, bool) and abs(value) < 2**31:
-        return int(value)
+    if isinstance(value, int | np.integer) and not isinstance(value, bool):
+        return min(max(int(value), -1), 2**31)  # far off is as wrong as near by
     if isinstance(value, str) and INTEGER.fullmatch(value.strip()):
         return int(value)
     raise InputError(f"the colour {value!r} is no integer", where, "the colours of D-simplices are 0 to D")

@@ -261,7 +261,8 @@ def write(
     name = os.fsdecode(path)
     gluing = kind == "gluing"
     if gluing:
-        kind = "json" if name == "-" else None
+        plain = name.lower().removesuffix(".gz")
+        kind = "json" if name == "-" else "gluing-csv" if plain.endswith(".csv") else None
         if isinstance(content, Skeleton):
             raise InputError("a skeleton is no gluing table", hint="leave the kind out")
     chosen, suffix = choose_writer(name, kind, content)
@@ -272,14 +273,10 @@ def write(
         raise InputError(
             f"{chosen.name} files are not packed with gzip", hint="take .gz off the name, and compress"
         )
-    if gluing and chosen.name not in ("json", "hdf5", "npz"):
-        raise InputError(f"{chosen.name} files hold no gluing tables", hint="write .json, .h5 or .npz")
-    if (
-        isinstance(content, Triangulation)
-        and content.coordinates is not None
-        and chosen.name in ("text", "npy")
-    ):
-        (notes or (lambda line: None))(f"left out the coordinates, which {chosen.name} files cannot hold")
+    if gluing and chosen.name not in ("json", "hdf5", "npz", "gluing-csv"):
+        raise InputError(f"{chosen.name} files hold no gluing tables", hint="write .json, .h5, .npz or .csv")
+    if notes is not None and (lost := chosen.drops(content)):
+        notes(f"left out {', '.join(lost)}, which {chosen.name} files cannot hold")
     assert chosen.write is not None
     if name == "-":
         sys.stdout.flush()

@@ -6,8 +6,9 @@ are words), the tables of the layout, and whatever further groups the skeleton c
 document is one of
 
     facets, with coordinates and corner_names where there are some
-    across, carry, written, with corners, corner_names and coordinates where there are some, and ``matched`` or
-    ``coloured`` (true) where the triangulation is
+    corners and across, where the labels say how the shared facets are glued
+    across, carry, written, with corners, corner_names and coordinates where there are some, and
+    ``matched`` or ``coloured`` (true) where the triangulation is
 
 Arrays may come as nested lists; nothing that comes in is trusted.
 """
@@ -372,7 +373,7 @@ def triangulation_of(
         more = f" and {len(unread) - 8} more" if len(unread) > 8 else ""
         notes(f"ignored {', '.join(unread[:8])}{more}: no entries of a triangulation")
     if "across" in document:
-        return _gluings(document), "gluing table"
+        return _gluings(document), "gluing table" if "carry" in document else "labels and neighbours"
     if "facets" not in document:
         known = ", ".join(list(document)[:8]) or "nothing"
         raise InputError(
@@ -386,25 +387,32 @@ def triangulation_of(
 
 
 def _gluings(document: Mapping[str, Any]) -> Triangulation:
-    if "carry" not in document:
-        raise InputError(
-            "there is across but no carry", hint="carry[s][i] lists the images of the corners of s"
-        )
     across = table_of(document["across"], "across")
     corners = names = None
     if document.get("corners") is not None:
         corners, names = _labels(document["corners"], "corners", document.get("corner_names"))
     written = document.get("written")
-    marks = {name: True for name in MARKS if document.get(name) is True}
-    t = Triangulation.from_gluings(
-        across,
-        table_of(document["carry"], "carry"),
-        written=None if written is None else table_of(written, "written"),
-        corners=corners,
-        corner_names=names,
-        coordinates=_coordinates(document, corners, names),
-        **marks,
-    )
+    signs = None if written is None else table_of(written, "written")
+    coordinates = _coordinates(document, corners, names)
+    if "carry" in document:
+        t = Triangulation.from_gluings(
+            across,
+            table_of(document["carry"], "carry"),
+            written=signs,
+            corners=corners,
+            corner_names=names,
+            coordinates=coordinates,
+            **{name: _mark(document.get(name), name) for name in MARKS},
+        )
+    elif corners is None:
+        raise InputError(
+            "there is across but neither carry nor corners",
+            hint="carry[s][i] lists the images of the corners of s; or give corners, the labels",
+        )
+    else:
+        t = Triangulation.from_neighbours(
+            corners, across, written=signs, corner_names=names, coordinates=coordinates
+        )
     c = t.coordinates
     if c is not None and c.corner is not None and c.corner.shape[:2] != t.across.shape:
         raise InputError(
@@ -412,6 +420,14 @@ def _gluings(document: Mapping[str, Any]) -> Triangulation:
             "coordinates/corner",
         )
     return t
+
+
+def _mark(value: Any, name: str) -> bool:
+    if value is None or isinstance(value, bool | np.bool_):
+        return bool(value)
+    if isinstance(value, np.ndarray) and value.dtype.kind == "b" and value.ndim == 0:
+        return bool(value)
+    raise InputError(f"it is {_name_of(value)}, not true or false", name)
 
 
 def _labels(value: Any, name: str, names: Any) -> tuple[np.ndarray, tuple[str, ...] | None]:

@@ -10,7 +10,7 @@ import numpy as np
 from ..errors import InputError
 from ..skeleton import Skeleton
 from .document import content_of, document_of
-from .registry import Content, Format, Options
+from .registry import Content, Format, Options, drops_coordinates
 from .source import Source
 from .target import Target
 
@@ -111,4 +111,5 @@ FORMAT = Format(
     sniff=sniff,
     read=read,
     write=write,
+    drops=drops_coordinates,
 )

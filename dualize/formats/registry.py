@@ -18,12 +18,23 @@ from ..triangulation import Triangulation
 from .source import GZIP, Source
 from .target import Target
 
-__all__ = ["Content", "Format", "Options", "choose_reader", "choose_writer", "formats"]
+__all__ = ["Content", "Format", "Options", "choose_reader", "choose_writer", "drops_coordinates", "formats"]
 
 Content = Triangulation | Skeleton
 
 # in the order in which their `sniff` is asked
-MODULES = ("hdf5", "npz", "npy", "json", "mesh", "text")
+MODULES = (
+    "hdf5",
+    "npz",
+    "npy",
+    "json",
+    "coloured_graphml",
+    "mesh",
+    "gluing_csv",
+    "coloured_csv",
+    "labels_and_neighbours",
+    "text",
+)
 
 
 class Options(NamedTuple):
@@ -67,6 +78,10 @@ class Format(NamedTuple):
         Whether ``.gz`` may follow the suffix.
     sure : bool
         Whether `sniff` knows every file of the format, so that "no" means another format.
+    suits : callable
+        Whether a content is best written so, where several formats share a suffix.
+    drops : callable
+        What of a content is not written, in a few words each.
     """
 
     name: str
@@ -77,6 +92,14 @@ class Format(NamedTuple):
     write: Callable[[Content, Target], None] | None
     packed: bool = False
     sure: bool = True
+    suits: Callable[[Content], bool] = lambda content: False
+    drops: Callable[[Content], list[str]] = lambda content: []
+
+
+def drops_coordinates(content: Content) -> list[str]:
+    """For formats of labels alone."""
+    there = isinstance(content, Triangulation) and content.coordinates is not None
+    return ["the coordinates"] if there else []
 
 
 @cache
@@ -150,7 +173,7 @@ def choose_writer(path: str, kind: str | None, content: Content) -> tuple[Format
         raise InputError(
             f"{suffix or candidates[0].name} can be read, not written", hint=f"these can: {names}"
         )
-    return writers[-1], suffix
+    return next((f for f in writers if f.suits(content)), writers[-1]), suffix
 
 
 def by_kind(kind: str) -> tuple[list[Format], str]:

@@ -135,23 +135,23 @@ def _check_tables(skeleton: Skeleton) -> None:
     counts = {key: int(skeleton.counts[key]) for key in COUNTS}
     letters = sizes(int(skeleton.dimension), counts)
     ids = id_dtype(counts)
-    for name, table in TABLES.items():
-        if name not in skeleton:
-            continue
-        array = skeleton[name]
-        shape = tuple(x if isinstance(x, int) else letters.get(x, -1) for x in table.shape)
-        if array.ndim == len(shape):  # the number of points and of axes is free, but one for all
-            for letter, have in zip(table.shape, array.shape, strict=True):
+    have = [table for name, table in TABLES.items() if name in skeleton]
+    for table in have:
+        array = skeleton[table.name]
+        if array.ndim == len(table.shape):  # the number of points and of axes is free, but one for all
+            for letter, length in zip(table.shape, array.shape, strict=True):
                 if letter in ("P", "A"):
-                    letters.setdefault(letter, have)
-            shape = tuple(x if isinstance(x, int) else letters[x] for x in table.shape)
+                    letters.setdefault(letter, length)
+        shape = tuple(x if isinstance(x, int) else letters.get(x, -1) for x in table.shape)
         if array.shape != shape:
-            written = ", ".join("any" if x < 0 else str(x) for x in shape)
+            asked = ", ".join("any" if x < 0 else str(x) for x in shape)
             raise wrong(
-                f"its shape is {array.shape}, but the counts and the layout ask for ({written})", name
+                f"its shape is {array.shape}, but the counts and the layout ask for ({asked})", table.name
             )
-        if array.dtype != dtype_of(table, ids):
-            raise wrong(f"its entries are {array.dtype}, but {dtype_of(table, ids)} in this layout", name)
+    for table in have:
+        array, width = skeleton[table.name], dtype_of(table, ids)
+        if array.dtype != width:
+            raise wrong(f"its entries are {array.dtype}, but {width} in this layout", table.name)
 
 
 def _check_presence(skeleton: Skeleton) -> None:

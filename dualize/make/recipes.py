@@ -14,6 +14,7 @@ from typing import Any, NamedTuple
 
 from ..errors import InputError
 from ..triangulation import Triangulation
+from .lattices import VARIANTS
 from .parts import Complex
 
 __all__ = ["RECIPES", "Parameter", "Recipe", "evaluate", "make", "recipe"]
@@ -25,11 +26,11 @@ class Parameter(NamedTuple):
     Attributes
     ----------
     name : str
-        As the function calls it, or the first of the alternatives a user meets.
+        As the function calls it.
     kind : str
         ``"integer"``, ``"integers"`` (several), ``"complex"`` (an expression or, on the command line, a
-        file), ``"word"``, ``"choice"``, ``"flag"``, ``"cycles"`` (a permutation such as ``(0 1 2)(3 4)``) or
-        ``"points"`` (a file of numbers).
+        file), ``"word"``, ``"choice"``, ``"flag"``, ``"switch"`` (yes or no), ``"cycles"`` (a permutation
+        such as ``(0 1 2)(3 4)``) or ``"points"`` (an array of numbers or, on the command line, a file).
     meaning : str
     default : object
         ``...`` where it must be given; such parameters are told apart by their order.
@@ -72,14 +73,12 @@ class Parameter(NamedTuple):
         """The value for the function from a text, or a value already of the right kind; checks the range."""
         if self.kind in ("integer", "integers"):
             return self._integer(value)
-        if self.kind == "flag":
-            if isinstance(value, bool):
-                return value
-            if str(value).lower() in ("yes", "true", "1"):
-                return True
-            if str(value).lower() in ("no", "false", "0"):
-                return False
-            raise InputError(f"{self.name} is {value!r}", hint="write yes or no")
+        if self.kind in ("flag", "switch"):
+            if not isinstance(value, bool) and value not in ("yes", "no"):
+                raise InputError(f"{self.name} is {value!r}", hint="write yes or no")
+            return value in (True, "yes")
+        if self.kind == "points" and isinstance(value, str):
+            raise InputError(f"{self.name} are given as an array or a file", hint=self._hint())
         if self.kind == "choice" and value not in self.choices:
             near = get_close_matches(str(value), self.choices, 1, 0.4)
             raise InputError(
@@ -98,7 +97,7 @@ class Parameter(NamedTuple):
         except (TypeError, ValueError):
             raise InputError(f"{self.name} is {value!r}, not an integer", hint=self._hint()) from None
         if (self.low is not None and number < self.low) or (self.high is not None and number > self.high):
-            raise InputError(f"{self.name} is {number}", hint=self._hint())
+            raise InputError(f"{self.name} is {number}; it must be {self.range}", hint=self._hint())
         return number
 
     def _hint(self) -> str:
@@ -136,47 +135,43 @@ class Recipe(NamedTuple):
         module, function = self.function.split(".")
         return getattr(import_module(f".{module}", __package__), function)(*arguments, **keywords)
 
+    def made(self, *values: Any, **named: Any) -> Triangulation:
+        """The same where the result must be a triangulation, not a factor of dimension 0 or 1."""
+        return _whole(self(*values, **named), self.name)
+
     def arguments(self, values: Sequence[Any], named: dict[str, Any]) -> tuple[list[Any], dict[str, Any]]:
-        """The checked arguments of the function, by order and by name."""
+        """The checked arguments of the function, by order and by name; complexes are made last."""
         by_name = {p.name: p for p in self.parameters}
-        for key in named:
+        usage = f"usage: {self.usage}"
+        ordered = [p for p in self.parameters if not p.option]
+        several = bool(ordered) and ordered[0].kind == "integers"
+        given: dict[str, Any] = {} if several else dict(zip([p.name for p in ordered], values, strict=False))
+        if several and not 2 <= len(values) <= 4:
+            raise InputError(f"{self.name} has {len(values)} {ordered[0].name}, not 2 to 4", hint=usage)
+        if not several and len(values) > len(ordered):
+            raise InputError(f"{self.name} got {len(values)} arguments, not {len(ordered)}", hint=usage)
+        for key, value in named.items():
             if key not in by_name:
                 near = get_close_matches(key, by_name, 1, 0.4)
-                raise InputError(
-                    f"{self.name} has no parameter {key!r}" + (f"; is it {near[0]}?" if near else ""),
-                    hint=f"usage: {self.usage}",
-                )
-        ordered = [p for p in self.parameters if not p.option]
-        arguments: list[Any] = []
-        if ordered and ordered[0].kind == "integers":
-            first = ordered[0]
-            low, high = 2, len("xyzt")
-            if not low <= len(values) <= high:
-                raise InputError(
-                    f"{self.name} has {len(values)} {first.name}",
-                    hint=f"usage: {self.usage}; {low} to {high}",
-                )
-            arguments = [first.convert(v) for v in values]
-            return arguments, {key: by_name[key].convert(v) for key, v in named.items()}
-        if len(values) > len(ordered):
-            raise InputError(
-                f"{self.name} takes at most {len(ordered)} arguments", hint=f"usage: {self.usage}"
-            )
-        keywords = {p.name: p.convert(v) for p, v in zip(ordered, values, strict=False)}
-        for key, v in named.items():
-            if key in keywords:
-                raise InputError(f"{self.name} got {key} twice", hint=f"usage: {self.usage}")
-            keywords[key] = by_name[key].convert(v)
+                what = f"{self.name} has no parameter {key!r}" + (f"; is it {near[0]}?" if near else "")
+                raise InputError(what, hint=usage)
+            if key in given:
+                raise InputError(f"{self.name} got {key} twice", hint=usage)
+            given[key] = value
         for p in self.parameters:
-            if p.default is ... and p.name not in keywords:
-                raise InputError(f"{self.name} needs {p.name}", hint=f"usage: {self.usage}")
-        return [], keywords
+            if p.default is ... and p.name not in given and not several:
+                raise InputError(f"{self.name} needs {p.name}", hint=usage)
+        sizes = [ordered[0].convert(value) for value in values] if several else []
+        for key in sorted(given, key=lambda key: by_name[key].kind == "complex"):
+            given[key] = by_name[key].convert(given[key])
+        return sizes, given
 
 
 def _dimension(default: Any = 4, low: int = 2) -> Parameter:
     return Parameter("dimension", "integer", "of the simplices", default, low, 4)
 
 
+_YES = ("yes", "no")
 _SEED = Parameter("seed", "integer", "the same seed gives the same result", 0, 0, option=True)
 _BASE = Parameter("base", "complex", "the complex, of dimension at most 3")
 _TWO = (Parameter("first", "complex", "one complex"), Parameter("second", "complex", "the other"))
@@ -195,16 +190,8 @@ _TABLE = [
             Parameter("sizes", "integers", "cubes along x, y, z, t", ..., 1),
             Parameter("periodic", "word", "the periodic directions, such as xyzt", "", option=True),
             Parameter("twist", "word", "what happens at a seam: t=yzx, or t=-x-y-z", None, option=True),
-            Parameter(
-                "variant",
-                "choice",
-                "how cubes are cut",
-                "paths",
-                None,
-                None,
-                ("paths", "coned", "barycentric"),
-                True,
-            ),
+            Parameter("variant", "choice", "how cubes are cut", "paths", choices=VARIANTS, option=True),
+            Parameter("coordinates", "switch", "where corners lie", "yes", choices=_YES, option=True),
         ),
         "lattices",
     ),
@@ -260,9 +247,7 @@ _TABLE = [
         "slab closed up along a symmetry of its base",
         (
             _BASE,
-            Parameter(
-                "symmetry", "cycles", "of the labels, such as '(0 1 2)(3 4)'; () is the identity", "()"
-            ),
+            Parameter("symmetry", "cycles", "of the labels, such as '(0 1 2)(3 4)'; () is the identity"),
             _integer("layers", "how many", 3, 3),
         ),
         "products",
@@ -476,7 +461,7 @@ def make(name: str, *values: Any, **named: Any) -> Triangulation:
     >>> make("product", "S3", "circle(4)")
     <Triangulation 4D: 80 simplices, labelled, 0 boundary facets>
     """
-    return _whole(recipe(name)(*values, **named), name)
+    return recipe(name).made(*values, **named)
 
 
 def _whole(made: Complex, name: str) -> Triangulation:

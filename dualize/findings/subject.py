@@ -1,0 +1,237 @@
+"""What an audit looks at: a skeleton, its triangulation, and what is computed from them once."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from functools import cached_property
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from ..audit import SHOWN
+from ..boundary import BoundaryWalk, walk
+from ..check import check_skeleton
+from ..errors import SkeletonError
+from ..form import check_form
+from ..skeleton import Skeleton
+from ..topology.classes import Census, Classes, census, classes, f_vector
+from ..topology.gluing import gluing_of
+from ..topology.links import Links, link_figures
+from ..triangulation import Triangulation
+
+if TYPE_CHECKING:
+    from gudhi import SimplexTree
+
+__all__ = ["GUDHI_LIMIT", "LINK_LIMIT", "Subject"]
+
+# Simplices up to which the costly checks run without --full: about ten seconds of gudhi, two of links.
+GUDHI_LIMIT = 20_000
+LINK_LIMIT = 400_000
+
+
+class Subject:
+    """A skeleton under audit; everything derived from it is computed when first asked for.
+
+    Parameters
+    ----------
+    skeleton : Skeleton
+    given : Triangulation or None
+        The triangulation from which it was made, where the caller has it.
+    full : bool
+        Lift the limits.
+    threads : int or None
+    """
+
+    def __init__(self, skeleton: Skeleton, given: Triangulation | None, full: bool, threads: int | None) -> None:
+        self.s = skeleton
+        self.given = given
+        self.full = full
+        self.threads = threads
+        self.seconds: dict[str, float] = {}
+
+    # -- can it be read? ---------------------------------------------------------------------------
+
+    @cached_property
+    def layout_error(self) -> SkeletonError | None:
+        """What is wrong with presence, shapes, ranges or offsets."""
+        try:
+            check_form(self.s)
+        except SkeletonError as error:
+            return error
+        return None
+
+    @cached_property
+    def table_error(self) -> SkeletonError | None:
+        """The first entry that another table contradicts, where the layout is sound."""
+        try:
+            check_skeleton(self.s, threads=self.threads)
+        except SkeletonError as error:
+            return error
+        return None
+
+    @cached_property
+    def read_back(self) -> Triangulation | SkeletonError:
+        """The triangulation read from the edges, or why that fails."""
+        try:
+            return gluing_of(self.s, threads=self.threads)
+        except SkeletonError as error:
+            return error
+
+    @cached_property
+    def obstacle(self) -> str | None:
+        """Why nothing else can be checked, or None."""
+        if self.layout_error is not None:
+            return "the layout is broken"
+        if not isinstance(self.read_back, Triangulation):
+            return "the gluings cannot be read back"
+        return None
+
+    @cached_property
+    def t(self) -> Triangulation:
+        """The triangulation that is audited: the one read back."""
+        found = self.read_back
+        assert isinstance(found, Triangulation)
+        return found
+
+    @property
+    def d(self) -> int:
+        return int(self.s.dimension)
+
+    @property
+    def n(self) -> int:
+        return int(self.s.counts["vertices"])
+
+    @property
+    def closed(self) -> bool:
+        return int(self.s.counts["nodes"]) == 0
+
+    @cached_property
+    def title(self) -> str:
+        s = self.s
+        try:
+            labels = "labelled" if "vertices/corners" in s else "unlabelled"
+            n = s.counts["vertices"]
+            out = f"Audit of {n} {'simplex' if n == 1 else 'simplices'} of dimension {s.dimension}, {labels}"
+        except (KeyError, TypeError):
+            return "Audit of a damaged skeleton"
+        name = (s.provenance or {}).get("input") if isinstance(s.provenance, dict) else None
+        return out + (f", from {name}" if isinstance(name, str) else "")
+
+    def over(self, limit: int) -> str | None:
+        """Why a costly check is left out, or None."""
+        if self.full or self.n <= limit:
+            return None
+        return f"{self.n} simplices, limit {limit}; --full"
+
+    # -- the simplices -----------------------------------------------------------------------------
+
+    @cached_property
+    def census(self) -> Census:
+        return census(self.t, threads=self.threads)
+
+    @cached_property
+    def facet_classes(self) -> Classes:
+        return classes(self.t, self.d, threads=self.threads)
+
+    @cached_property
+    def twins(self) -> bool:
+        """Whether several simplices have the same labels, where labels name them."""
+        return self.t.corners is not None and self.t.matched and self.census.f[-1] < self.n
+
+    @cached_property
+    def labels(self) -> np.ndarray | None:
+        """Labels that make this a simplicial complex, shape (N, D + 1), ascending; None where there are none."""
+        if self.t.corners is not None and self.t.matched:
+            return None if self.twins else self.t.corners
+        points = np.sort(self.census.classes[0].number, axis=1).astype(np.int64)
+        if (points[:, 1:] == points[:, :-1]).any() or f_vector(points) != self.census.f:
+            return None
+        return points
+
+    @cached_property
+    def boundary_labels(self) -> np.ndarray:
+        """Labels of the boundary facets in the sense of `labels`, ascending, shape (B, D)."""
+        assert self.labels is not None
+        matched = self.t.corners is not None and self.t.matched
+        points = self.t.corners if matched else self.census.classes[0].number
+        assert points is not None
+        vertex, slot = np.nonzero(self.t.across < 0)
+        others = np.array([[c for c in range(self.d + 1) if c != i] for i in range(self.d + 1)])
+        return np.sort(points[vertex[:, None], others[slot]], axis=1).astype(np.int64)
+
+    @cached_property
+    def walk(self) -> BoundaryWalk:
+        return walk(self.t, threads=self.threads)
+
+    @cached_property
+    def boundary(self) -> Triangulation | None:
+        """The boundary built on its own; None where there is none, or in dimension 2."""
+        return None if self.closed or self.d == 2 else self.t.boundary(threads=self.threads)
+
+    @cached_property
+    def boundary_f(self) -> list[int]:
+        """f-vector of the boundary."""
+        if self.closed:
+            return [0] * self.d
+        if self.boundary is not None:
+            return census(self.boundary, threads=self.threads).f
+        return [len(self.walk.vertex)] * 2  # circles
+
+    @cached_property
+    def links(self) -> Links | None:
+        """Figures of all links, None beyond the limit."""
+        return None if self.over(LINK_LIMIT) else link_figures(self.t, self.census, threads=self.threads)
+
+    @cached_property
+    def link_trouble(self) -> str | None:
+        """Why the links are not all known to be homology spheres or balls; None when they are."""
+        if (reason := self.over(LINK_LIMIT)) is not None:
+            return f"links not checked: {reason}"
+        if any(len(rows) for rows in self.census.scattered) or self.twins:
+            return "some links are disconnected"
+        if any(level.irregular.any() for level in self.census.classes):
+            return "some simplices are glued to themselves"
+        assert self.links is not None
+        if any(self.links.wrong(m).any() for m in range(1, self.d - 1)) or any(self.links.homology.values()):
+            return "some links are no homology spheres or balls"
+        return None
+
+    @cached_property
+    def tree(self) -> SimplexTree | None:
+        """gudhi's simplex tree, None where it is too large or no simplicial complex."""
+        from ..topology.gudhi import simplex_tree
+
+        return None if self.no_gudhi else simplex_tree(self.labels)  # type: ignore[arg-type]
+
+    @cached_property
+    def no_gudhi(self) -> str | None:
+        """Why gudhi is not asked, or None."""
+        if (reason := self.over(GUDHI_LIMIT)) is not None:
+            return reason
+        if self.labels is None:
+            return "no simplicial complex, so gudhi cannot hold it"
+        return None
+
+    # -- naming ------------------------------------------------------------------------------------
+
+    def simplex_name(self, m: int, first: int) -> str:
+        """A simplex with `m` corners by its first occurrence: labels, or corners of a top simplex."""
+        from ..topology.classes import corner_subsets
+
+        subsets = corner_subsets(self.d, m)
+        simplex, subset = divmod(int(first), len(subsets))
+        corners = subsets[subset]
+        if self.t.corners is not None:
+            return " ".join(map(str, self.t.named(self.t.corners[simplex, corners])))
+        word = "corner" if m == 1 else "corners"
+        return f"{word} {' '.join(map(str, corners.tolist()))} of simplex {simplex}"
+
+    def place(self, vertex: int) -> str:
+        return self.t.place(int(vertex))
+
+
+def named(items: Sequence[Any], total: int | None = None) -> str:
+    """The first ten of `items`, and how many more there are of `total`."""
+    total = len(items) if total is None else total
+    more = f"; and {total - SHOWN} more" if total > SHOWN else ""
+    return "; ".join(str(x) for x in items[:SHOWN]) + more

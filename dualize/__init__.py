@@ -19,10 +19,12 @@ from typing import TYPE_CHECKING, Any
 # A function that bears its module's name is imported at once: were it left to `__getattr__`, importing the
 # module first (`import dualize.build`) would bind the name to the module.
 from .build import build
+from .export import export
 
 if TYPE_CHECKING:
     from . import make
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
+    from .export import read_export
     from .formats import load, read
     from .skeleton import Skeleton
     from .triangulation import Coordinates, Triangulation
@@ -41,6 +43,7 @@ _HOMES = {
     "TriangulationError": "errors",
     "load": "formats",
     "read": "formats",
+    "read_export": "export",
 }
 
 # rooms that are used under their own names, imported on first use
@@ -57,9 +60,11 @@ __all__ = [
     "TriangulationError",
     "__version__",
     "build",
+    "export",
     "load",
     "make",
     "read",
+    "read_export",
 ]
 
 

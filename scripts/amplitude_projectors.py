@@ -36,7 +36,7 @@ def load(path):
 
         with h5py.File(path) as file:
             foam = {f"edges/{name}": table[()] for name, table in file["edges"].items()}
-            counts = {name: int(value) for name, value in json.loads(file.attrs["counts"]).items()}
+            counts = json.loads(file["counts"][()])
             return foam | {"dimension": int(file.attrs["dimension"]), "counts": counts}
     with open(path) as file:
         data = json.load(file)

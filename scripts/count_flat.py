@@ -31,7 +31,7 @@ def load(path):
         import h5py
 
         with h5py.File(path) as file:
-            return {name: file[name][()] for name in names} | {"counts": json.loads(file.attrs["counts"])}
+            return {name: file[name][()] for name in names} | {"counts": json.loads(file["counts"][()])}
     with open(path) as file:
         data = json.load(file)
     tables = {f"{group}/{name}": np.array(data[group][name]) for group, name in (n.split("/") for n in names)}

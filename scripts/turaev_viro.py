@@ -32,7 +32,7 @@ def load(path):
 
         with h5py.File(path) as file:
             tables = {name: file[name][()] for name in names if name in file}
-            tables |= {"dimension": int(file.attrs["dimension"]), "counts": json.loads(file.attrs["counts"])}
+            tables |= {"dimension": int(file.attrs["dimension"]), "counts": json.loads(file["counts"][()])}
             return tables
     with open(path) as file:
         data = json.load(file)

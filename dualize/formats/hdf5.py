@@ -10,8 +10,9 @@ The same content gives the same bytes: no times are kept.
 
 from __future__ import annotations
 
-from io import BytesIO
-from typing import TYPE_CHECKING, Any
+from collections.abc import Callable
+from io import BytesIO, RawIOBase
+from typing import IO, TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -118,22 +119,68 @@ def _attribute(file: h5py.File, name: str) -> np.ndarray:
 # -- writing ---------------------------------------------------------------------------------------
 
 
+class _Patient(RawIOBase):
+    """A stream for the HDF5 library in which nothing fails.
+
+    The library cannot take back a failed write: closing the file fails again, loudly and in odd places.  So
+    the first failure (a full disk, an interrupt) is kept here for `settle`, and what is written after it is
+    dropped.
+    """
+
+    def __init__(self, stream: IO[bytes]) -> None:
+        self.stream = stream
+        self.failure: BaseException | None = None
+
+    def _try(self, function: Callable[..., int], *arguments: Any) -> int:
+        try:
+            return function(*arguments)
+        except BaseException as failure:
+            self.failure = self.failure or failure
+            return 0
+
+    def write(self, data: Any) -> int:
+        if self.failure is None:
+            self._try(self.stream.write, data)
+        return len(data)
+
+    def seek(self, offset: int, whence: int = 0) -> int:
+        return self._try(self.stream.seek, offset, whence)
+
+    def tell(self) -> int:
+        return self._try(self.stream.tell)
+
+    def readinto(self, room: Any) -> int:
+        self._try(self.stream.readinto, room)  # type: ignore[attr-defined]
+        return len(room)
+
+    def truncate(self, size: int | None = None) -> int:
+        return self._try(self.stream.truncate, size)
+
+    def close(self) -> None:
+        """The stream belongs to someone else."""
+
+    def settle(self) -> None:
+        """Raise what failed."""
+        if self.failure is not None:
+            raise self.failure
+
+
 def write(content: Content, target: Target) -> None:
     """Write an HDF5 file."""
     import h5py
 
     document = document_of(content, target.gluing)
-    if target.path is not None:
-        try:
-            with h5py.File(target.path, "w") as file:
-                _fill(file, document, target.compress)
-        except RuntimeError as error:
-            raise OSError(str(error)) from None
-        return
-    memory = BytesIO()
-    with h5py.File(memory, "w") as file:
-        _fill(file, document, target.compress)
-    target.stream.write(memory.getbuffer())
+    stream = target.stream if target.path is not None else BytesIO()
+    patient = _Patient(stream)
+    try:
+        with h5py.File(patient, "w") as file:
+            _fill(file, document, target.compress)
+    except (OSError, RuntimeError):
+        patient.settle()
+        raise
+    patient.settle()
+    if isinstance(stream, BytesIO):
+        target.stream.write(stream.getbuffer())
 
 
 def _fill(file: h5py.File, document: dict[str, Any], compress: bool) -> None:

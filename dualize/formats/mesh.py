@@ -160,8 +160,9 @@ def _simplices(mesh: meshio.Mesh, options: Options) -> np.ndarray:
         raise InputError(f"the mesh holds neither tetrahedra nor triangles ({kinds})")
     others = sorted({block.type for block in blocks if block.dim == top and block.type != SIMPLEX[top]})
     if others:
+        meant = "tetrahedra" if top == 3 else "triangles"
         raise InputError(
-            f"the mesh holds other cells than {'tetrahedra' if top == 3 else 'triangles'}: {', '.join(others)}",
+            f"the mesh holds other cells than {meant}: {', '.join(others)}",
             hint="split them into simplices, and save cells without points between the corners",
         )
     left_out: dict[str, int] = {}

@@ -78,7 +78,8 @@ def parse_box(text, out, side, first, lo, hi):
     """Read a JSON list of integers, or of such lists, three deep at most and all rows of a length.
 
     The list begins at byte `lo`; its entries go into `out` from `first` on, the lengths at each depth into
-    `side` (3,), 0 beyond the depth.  Returns where the list ends, or -1 at anything else, an empty list included.
+    `side` (3,), 0 beyond the depth.  Returns where the list ends, or -1 at anything else, an
+    empty list included.
     """
     full = 0
     level = 0

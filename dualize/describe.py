@@ -12,7 +12,6 @@ from typing import Any
 import numpy as np
 
 from .build import build
-from .errors import TriangulationError
 from .layout import TABLES
 from .skeleton import Skeleton
 from .triangulation import Triangulation
@@ -93,10 +92,7 @@ def _triangulation_facts(t: Triangulation, threads: int | None) -> dict[str, Any
         "facets": {"glued": (t.across.size - free) // 2, "boundary": free},
         "coordinates": _coordinates(t.coordinates._asdict() if t.coordinates else {}),
     }
-    try:
-        dual = build(t, keep_singular=True, threads=threads)
-    except TriangulationError as error:
-        return {**facts, "dual": None, "no_dual_because": str(error)}
+    dual = build(t, keep_singular=True, threads=threads)
     return {**facts, **_shape(dual), "dual": dict(dual.counts)}
 
 
@@ -128,9 +124,6 @@ def _triangulation_rows(facts: Mapping[str, Any]) -> Iterable[tuple[str, str]]:
         f"{facts['facets']['glued']} glued in pairs, {facts['facets']['boundary']} in the boundary",
     )
     yield "coordinates", facts["coordinates"] or "none"
-    if facts["dual"] is None:
-        yield "dual", f"none: {facts['no_dual_because']}"
-        return
     yield from _shape_rows(facts)
     c = facts["dual"]
     yield (

@@ -353,7 +353,7 @@ def test_an_interrupt_while_reading_leaves_no_file(here):
     assert sorted(os.listdir(here)) == ["one.txt"]
 
 
-@pytest.mark.skipif(not os.path.exists("/proc/self/maps"), reason="needs /proc to see what a process has loaded")
+@pytest.mark.skipif(not os.path.exists("/proc/self/maps"), reason="needs /proc to see what is loaded")
 @pytest.mark.parametrize("delay", [0.0, 0.2, 0.5])
 def test_an_interrupt_of_a_long_build_ends_within_two_seconds_and_leaves_no_file(here, large, delay):
     run = start(here, large, "foam.json")

@@ -28,7 +28,7 @@ __all__ = ["command", "summary"]
     "build",
     examples=(
         "dualize build meshes/slab_4d.txt -o foam.json",
-        "dualize build meshes/rooms.txt --points -o foam.h5",
+        "dualize build meshes/harbour_inside.txt --points -o foam.h5",
     ),
 )
 @input_options

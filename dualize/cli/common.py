@@ -68,17 +68,26 @@ class Verb(click.Command):
 
 
 class VerbGroup(Verb, click.Group):
-    """A verb that has verbs of its own."""
+    """A verb that has verbs of its own, or whatever `noun` calls them."""
+
+    noun = "verb"
 
     def __init__(self, *args: Any, **settings: Any) -> None:
-        super().__init__(*args, no_args_is_help=False, subcommand_metavar="VERB ...", **settings)
+        super().__init__(*args, no_args_is_help=False, **settings)
+        self.subcommand_metavar = f"{self.noun.upper()} ..."
 
     def parse_args(self, ctx: click.Context, args: list[str]) -> list[str]:
         """Refuse an empty command line; the parser of the base would print the help as an error."""
         if not args:
             names = ", ".join(self.list_commands(ctx))
-            raise InputError(f"{ctx.command_path} needs a verb", hint=f"known verbs: {names}")
+            raise InputError(f"{ctx.command_path} needs a {self.noun}", hint=f"known {self.noun}s: {names}")
         return super().parse_args(ctx, args)
+
+    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
+        """What there is, a line each."""
+        commands = [(name, self.get_command(ctx, name)) for name in self.list_commands(ctx)]
+        with formatter.section(f"{self.noun.capitalize()}s"):
+            formatter.write_dl([(name, c.get_short_help_str(80)) for name, c in commands if c is not None])
 
     def resolve_command(
         self, ctx: click.Context, args: list[str]
@@ -91,8 +100,8 @@ class VerbGroup(Verb, click.Group):
         names = self.list_commands(ctx)
         near = get_close_matches(name.lower(), names, 1, 0.5)
         raise InputError(
-            f"{ctx.command_path} has no verb {name}" + (f"; is it {near[0]}?" if near else ""),
-            hint=f"known verbs: {', '.join(names)}",
+            f"{ctx.command_path} has no {self.noun} {name}" + (f"; is it {near[0]}?" if near else ""),
+            hint=f"known {self.noun}s: {', '.join(names)}",
         )
 
 

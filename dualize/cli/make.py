@@ -29,9 +29,7 @@ __all__ = ["command"]
 class Recipes(VerbGroup):
     """The recipes as commands, each with the parameters that its table lists."""
 
-    def __init__(self, *args: Any, **settings: Any) -> None:
-        super().__init__(*args, **settings)
-        self.subcommand_metavar = "RECIPE ..."
+    noun = "recipe"
 
     def parse_args(self, ctx: click.Context, args: list[str]) -> list[str]:
         """Refuse an empty command line."""

@@ -10,21 +10,22 @@ All spins are twice-spins.  It uses the tables `edges/...` and nothing else (H. 
 models in four dimensions", Mod. Phys. Lett. A 7 (1992) 2799):
 
 * A face of spin j carries V, of dimension 2j + 1, along its direction, and V* against it.
-* An internal edge carries the projector on the invariants of the product of its faces, V where the face runs
-  along the edge and V* where it runs against.  The projector is a sum of v (x) v* over an orthonormal basis: v sits
-  at the target of the edge, v* at its source.
-* At place k of the end (vertex, slot) of an edge the face goes on through the wedge (slot, corner at place k).
+* An internal edge carries the projector on the invariants of the product of its faces, V where the face
+  runs along the edge and V* where it runs against.  The projector is a sum of v (x) v* over an orthonormal
+  basis: v sits at the target of the edge, v* at its source.
+* At place k of the end (vertex, slot) of an edge the face goes on through the wedge (slot, corner at place
+  k).
 * Internal faces have the weight 2j + 1; those at the boundary have none, so that regions can be glued.
 
-An external edge stays open.  It has one end at a vertex, and there it carries one of the real orthonormal states
-`open_states` in place of v or v*: first coupled in V (x) V (x) ..., places (0 1)(2 3), by ascending intermediate spin, with
-the phases of Condon and Shortley; then V is carried to V* at the places of the faces that run against the edge,
-|m> to (-1)**(j - m) <-m|.  The result has one axis per node, in order.
+An external edge stays open.  It has one end at a vertex, and there it carries one of the real orthonormal
+states `open_states` in place of v or v*: first coupled in V (x) V (x) ..., places (0 1)(2 3), by ascending
+intermediate spin, with the phases of Condon and Shortley; then V is carried to V* at the places of the
+faces that run against the edge, |m> to (-1)**(j - m) <-m|.  The result has one axis per node, in order.
 """
 
 import argparse
 import json
-from functools import lru_cache
+from functools import cache
 
 import numpy as np
 
@@ -60,7 +61,7 @@ def raising(spins, signs):
     return total, weight
 
 
-@lru_cache(maxsize=None)
+@cache
 def invariants(spins, signs):
     """An orthonormal basis of the invariants, shape (dimension, 2j_0 + 1, 2j_1 + 1, ...)."""
     up, weight = raising(spins, signs)
@@ -71,7 +72,7 @@ def invariants(spins, signs):
     return basis.reshape(-1, *(s + 1 for s in spins))
 
 
-@lru_cache(maxsize=None)
+@cache
 def open_states(spins, signs):
     """The states of an open edge, in the shape of `invariants`."""
     states = invariants(spins, (1,) * len(spins))
@@ -97,7 +98,9 @@ def open_states(spins, signs):
     for place, (spin, sign) in enumerate(zip(spins, signs, strict=True), start=1):
         if sign < 0:
             turn = (-1.0) ** np.arange(spin, -1, -1)
-            states = np.flip(states, place) * turn.reshape([-1 if x == place else 1 for x in range(states.ndim)])
+            states = np.flip(states, place) * turn.reshape(
+                [-1 if x == place else 1 for x in range(states.ndim)]
+            )
     return states
 
 
@@ -112,7 +115,9 @@ def labellings(faces, internal, given, up_to):
     def allowed(face):
         rows = spins[faces[edges_of[face]]]
         rows = rows[(rows >= 0).all(axis=1)]
-        return (rows.sum(axis=1) % 2 == 0).all() and (2 * rows.max(axis=1, initial=0) <= rows.sum(axis=1)).all()
+        return (rows.sum(axis=1) % 2 == 0).all() and (
+            2 * rows.max(axis=1, initial=0) <= rows.sum(axis=1)
+        ).all()
 
     def choose():
         """A free face and its largest possible spin: where all the others of an edge are known, their sum."""
@@ -142,7 +147,8 @@ def labellings(faces, internal, given, up_to):
 
 
 def contract(tensors, keep):
-    """Sum the product of (array, names of its axes) over all names but `keep`; intermediate arrays may be large."""
+    """Sum the product of (array, names of its axes) over all names but `keep`; intermediate arrays may be
+    large."""
     number = {name: x for x, name in enumerate(dict.fromkeys(n for _, names in tensors for n in names))}
     operands = [x for array, names in tensors for x in (array, [number[n] for n in names])]
     return np.einsum(*operands, [number[n] for n in keep], optimize=("greedy", 2**30))
@@ -151,8 +157,8 @@ def contract(tensors, keep):
 def amplitude(foam, boundary, fixed=None, up_to=np.inf):
     """The amplitude of a foam: one axis per node, over the states of its external edge.
 
-    `boundary` are the twice-spins of the links in order, or one number for all; `fixed` maps internal faces to
-    twice-spins held fixed (their weight 2j + 1 stays in); free spins are summed up to `up_to`.
+    `boundary` are the twice-spins of the links in order, or one number for all; `fixed` maps internal faces
+    to twice-spins held fixed (their weight 2j + 1 stays in); free spins are summed up to `up_to`.
     """
     c = foam["counts"]
     internal, inner_edges = c["faces_internal"], c["edges_internal"]
@@ -198,9 +204,15 @@ def amplitude(foam, boundary, fixed=None, up_to=np.inf):
 def main():
     parser = argparse.ArgumentParser(description="The SU(2) BF amplitude of a foam, by projectors.")
     parser.add_argument("foam", help="a skeleton as JSON or HDF5")
-    parser.add_argument("--spins", default="0", help="twice-spins of the links, comma-separated, or one for all")
-    parser.add_argument("--fix", action="append", default=[], metavar="FACE=SPIN", help="hold an internal face")
-    parser.add_argument("--up-to", type=float, default=np.inf, help="largest twice-spin of the internal faces")
+    parser.add_argument(
+        "--spins", default="0", help="twice-spins of the links, comma-separated, or one for all"
+    )
+    parser.add_argument(
+        "--fix", action="append", default=[], metavar="FACE=SPIN", help="hold an internal face"
+    )
+    parser.add_argument(
+        "--up-to", type=float, default=np.inf, help="largest twice-spin of the internal faces"
+    )
     given = parser.parse_args()
     spins = [int(x) for x in given.spins.split(",")]
     fixed = dict(tuple(map(int, x.split("="))) for x in given.fix)

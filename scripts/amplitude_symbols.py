@@ -6,33 +6,37 @@
     python scripts/amplitude_symbols.py FOAM --spins 1 --fix 3=2  # face 3 held at spin 1
     python scripts/amplitude_symbols.py FOAM --up-to 2            # no spin above 1
 
-All spins are twice-spins.  The same number as by `amplitude_projectors.py`, by another way and from other tables:
-those of the vertices and wedges, and `faces/against`.
+All spins are twice-spins.  The same number as by `amplitude_projectors.py`, by another way and from other
+tables: those of the vertices and wedges, and `faces/against`.
 
-* Each edge sums over an orthonormal basis of real intertwiners, products of 3jm symbols, with legs in the order of
-  the places at both ends.
+* Each edge sums over an orthonormal basis of real intertwiners, products of 3jm symbols, with legs in the
+  order of the places at both ends.
 * Each vertex is a symbol of its spins and intertwiners (the 6j symbol of a tetrahedron, the 15j symbol of a
-  4-simplex): its intertwiners contracted, in every wedge, by epsilon[m, m'] = (-1)**(j - m) delta[m, -m'], from
-  the slot where the face enters to the slot where it leaves.
-* Internal faces have the weight 2j + 1, and every face the sign (-1)**(2j n), n the number of edges that it runs
-  against and whose target is a vertex: `faces/against`, plus 1 if its last edge comes from a node.
+  4-simplex): its intertwiners contracted, in every wedge, by epsilon[m, m'] = (-1)**(j - m) delta[m, -m'],
+  from the slot where the face enters to the slot where it leaves.
+* Internal faces have the weight 2j + 1, and every face the sign (-1)**(2j n), n the number of edges that it
+  runs against and whose target is a vertex: `faces/against`, plus 1 if its last edge comes from a node.
 
-The result has one axis per node, in order: the intertwiner of its external edge, by ascending intermediate spin.
+The result has one axis per node, in order: the intertwiner of its external edge, by ascending
+intermediate spin.
 
-D. A. Varshalovich, A. N. Moskalev, V. K. Khersonskii, "Quantum Theory of Angular Momentum" (1988), chapters 8-10;
-H. Ooguri, "Topological lattice models in four dimensions", Mod. Phys. Lett. A 7 (1992) 2799.
+D. A. Varshalovich, A. N. Moskalev, V. K. Khersonskii, "Quantum Theory of Angular Momentum" (1988), chapters
+8 to 10; H. Ooguri, "Topological lattice models in four dimensions", Mod. Phys. Lett. A 7 (1992) 2799.
 """
 
 import argparse
 import json
-from functools import lru_cache
+from functools import cache, lru_cache
 from itertools import combinations
 from math import factorial, inf, sqrt
 
 import numpy as np
 
-TABLES = ["vertices/edge", "vertices/leaves", "wedges/face", "wedges/direction", "edges/source_corner",
-          "edges/target_corner", "edges/source", "faces/against", "faces/edge", "faces/edge_offsets"]  # fmt: skip
+TABLES = [
+    *("vertices/edge", "vertices/leaves", "wedges/face", "wedges/direction"),
+    *("edges/source", "edges/source_corner", "edges/target_corner"),
+    *("faces/against", "faces/edge", "faces/edge_offsets"),
+]
 
 
 def load(path):
@@ -57,7 +61,7 @@ def triangle(a, b, c):
     return (a + b + c) % 2 == 0 and abs(a - b) <= c <= a + b
 
 
-@lru_cache(maxsize=None)
+@cache
 def symbol_3jm(a, b, c):
     """All 3jm symbols of three twice-spins, by Racah's sum; axis index i means m = j - i."""
     out = np.zeros((a + 1, b + 1, c + 1))
@@ -74,9 +78,18 @@ def symbol_3jm(a, b, c):
             norm = delta * f(a + al) * f(a - al) * f(b + be) * f(b - be) * f(c + ga) * f(c - ga)
             total = 0.0
             for t in range(max(0, b - c - al, a - c + be), min(a + b - c, a - al, b + be) + 1, 2):
-                below = f(t) * f(c - b + t + al) * f(c - a + t - be) * f(a + b - c - t) * f(a - t - al) * f(b - t + be)
+                below = (
+                    f(t)
+                    * f(c - b + t + al)
+                    * f(c - a + t - be)
+                    * f(a + b - c - t)
+                    * f(a - t - al)
+                    * f(b - t + be)
+                )
                 total += (-1) ** (t // 2) / below
-            out[(a - al) // 2, (b - be) // 2, (c - ga) // 2] = (-1) ** ((a - b - ga) // 2) * sqrt(norm) * total
+            out[(a - al) // 2, (b - be) // 2, (c - ga) // 2] = (
+                (-1) ** ((a - b - ga) // 2) * sqrt(norm) * total
+            )
     return out
 
 
@@ -84,7 +97,7 @@ def epsilon(spin):
     return np.fliplr(np.diag((-1.0) ** np.arange(spin + 1)))
 
 
-@lru_cache(maxsize=None)
+@cache
 def intertwiners(*spins):
     """Orthonormal real intertwiners, shape (number, 2j_0 + 1, ...), by ascending intermediate spin."""
     if len(spins) == 2:
@@ -165,8 +178,8 @@ def largest_spins(edges, given, up_to):
 def amplitude(tables, boundary, fixed=None, up_to=inf):
     """The amplitude of a foam: one axis per node, over the intertwiners of its external edge.
 
-    `boundary` are the twice-spins of the links in order, or one number for all; `fixed` maps internal faces to
-    twice-spins held fixed (their weight 2j + 1 stays in); free spins are summed up to `up_to`.
+    `boundary` are the twice-spins of the links in order, or one number for all; `fixed` maps internal faces
+    to twice-spins held fixed (their weight 2j + 1 stays in); free spins are summed up to `up_to`.
     """
     foam = Foam(tables)
     c = foam.counts
@@ -179,7 +192,9 @@ def amplitude(tables, boundary, fixed=None, up_to=inf):
     given = spins.tolist()
     bound = largest_spins(edges.values(), given, up_to)
     if inf in bound:
-        raise SystemExit(f"the spin of face {bound.index(inf)} has no bound: --fix it, or sum --up-to a largest spin")
+        raise SystemExit(
+            f"the spin of face {bound.index(inf)} has no bound: --fix it, or sum --up-to a largest spin"
+        )
     nodes = range(c["edges_internal"], c["edges_internal"] + c["nodes"])
     total = np.zeros([len(intertwiners(*(given[f] for f in edges[e]))) for e in nodes])
 
@@ -220,8 +235,12 @@ def term(foam, spins, nodes):
 def main():
     parser = argparse.ArgumentParser(description="The SU(2) BF amplitude of a foam, by 3jm and 15j symbols.")
     parser.add_argument("foam", help="a skeleton as JSON or HDF5")
-    parser.add_argument("--spins", default="0", help="twice-spins of the links, comma-separated, or one for all")
-    parser.add_argument("--fix", action="append", default=[], metavar="FACE=SPIN", help="hold an internal face")
+    parser.add_argument(
+        "--spins", default="0", help="twice-spins of the links, comma-separated, or one for all"
+    )
+    parser.add_argument(
+        "--fix", action="append", default=[], metavar="FACE=SPIN", help="hold an internal face"
+    )
     parser.add_argument("--up-to", type=float, default=inf, help="largest twice-spin of the internal faces")
     given = parser.parse_args()
     spins = [int(x) for x in given.spins.split(",")]

@@ -1,14 +1,15 @@
 #!/usr/bin/env python3
-"""Count the flat connections of a finite group on a closed, connected foam skeleton, read from the file alone.
+"""Count the flat connections of a finite group on a closed, connected foam, read from the file alone.
 
     python scripts/count_flat.py FOAM --group S3
     python scripts/count_flat.py FOAM --group S3 --all    # visit every one, however many
 
-A connection puts a group element on every internal edge; it is flat when the product around every internal face, in
-order, the inverse where the face runs against the edge, is 1.  There are |Hom(pi1, G)| |G|**(V - 1) of them (R. Dijkgraaf,
-E. Witten, "Topological gauge theories and group cohomology", Commun. Math. Phys. 129 (1990) 393), pi1 the group of the
-two-complex.  By default elements are 1 on a spanning tree, and the count is multiplied by |G| for each of its edges, which
-is exact: a gauge transformation at every vertex but one brings each connection there in one way.
+A connection puts a group element on every internal edge; it is flat when the product around every internal
+face, in order, the inverse where the face runs against the edge, is 1.  There are |Hom(pi1, G)| |G|**(V -
+1) of them, pi1 the group of the two-complex (R. Dijkgraaf, E. Witten, "Topological gauge theories and group
+cohomology", Commun. Math. Phys. 129 (1990) 393).  By default elements are 1 on a spanning tree, and the
+count is multiplied by |G| for each of its edges, which is exact: a gauge transformation at every vertex but
+one brings each connection there in one way.
 """
 
 import argparse
@@ -148,7 +149,10 @@ def main():
     foam = load(given.foam)
     number, group = count(foam, GROUPS[given.group], given.every), GROUPS[given.group]
     homomorphisms = number // len(group) ** (foam["counts"]["vertices"] - 1)
-    print(f"{number} flat connections; {homomorphisms} homomorphisms from the group of the two-complex to {given.group}")
+    print(
+        f"{number} flat connections; {homomorphisms} homomorphisms from the group of the two-complex "
+        f"to {given.group}"
+    )
 
 
 if __name__ == "__main__":

@@ -4,15 +4,16 @@
     dualize build INPUT -o FOAM --points
     python scripts/turaev_viro.py FOAM --level 5 [--root 1]
 
-V. G. Turaev, O. Y. Viro, "State sum invariants of 3-manifolds and quantum 6j-symbols", Topology 31 (1992) 865, in the
-form
+V. G. Turaev, O. Y. Viro, "State sum invariants of 3-manifolds and quantum 6j-symbols", Topology 31 (1992)
+865, in the form
 
     TV_r = D**(-2 P)  sum  prod_faces (-1)**(2j) [2j + 1]  prod_edges (-1)**(j + k + l)  prod_vertices {6j}
 
-with spins 2j = 0 .. r - 2 on the faces (they are dual to the segments of the triangulation), quantum numbers
-[n] = sin(n pi s / r) / sin(pi s / r), D**2 = r / (2 sin(pi s / r)**2), s the root (1 by default, coprime to r), and P the number of points
-of the triangulation.  Only P is not in the two-complex: it is read from `vertices/point`.  That every point has a sphere
-around it is not checked here: where it fails the number means nothing.
+with spins 2j = 0 .. r - 2 on the faces (they are dual to the segments of the triangulation), quantum
+numbers [n] = sin(n pi s / r) / sin(pi s / r), D**2 = r / (2 sin(pi s / r)**2), s the root (1 by default,
+coprime to r), and P the number of points of the triangulation.  Only P is not in the two-complex: it is
+read from `vertices/point`.  That every point has a sphere around it is not checked here: where it fails the
+number means nothing.
 """
 
 import argparse
@@ -25,7 +26,7 @@ import numpy as np
 
 
 def load(path):
-    """The four tables that are needed, {name: array}, with `dimension` and `counts`; JSON or HDF5 by suffix."""
+    """The tables that are needed, {name: array}, with `dimension` and `counts`; JSON or HDF5 by suffix."""
     names = ["wedges/face", "edges/face", "vertices/point"]
     if str(path).endswith((".h5", ".hdf5")):
         import h5py

@@ -64,10 +64,14 @@ def test_open_states_are_orthonormal_invariants(signs):
         np.testing.assert_allclose(states.T @ states, basis.T @ basis, atol=1e-12)
 
 
-@pytest.mark.parametrize("spins", [(1, 1, 1, 1), (2, 1, 2, 3), (2, 2, 2, 2), (3, 1, 2, 2), (0, 1, 2, 3)], ids=str)
+@pytest.mark.parametrize(
+    "spins", [(1, 1, 1, 1), (2, 1, 2, 3), (2, 2, 2, 2), (3, 1, 2, 2), (0, 1, 2, 3)], ids=str
+)
 def test_open_states_are_products_of_3j_symbols(spins):
     """Both readers have the same states, one from generators of the group, one from Racah's sums."""
-    np.testing.assert_allclose(PROJECTORS.open_states(spins, (1,) * 4), SYMBOLS.intertwiners(*spins), atol=1e-12)
+    np.testing.assert_allclose(
+        PROJECTORS.open_states(spins, (1,) * 4), SYMBOLS.intertwiners(*spins), atol=1e-12
+    )
 
 
 # --------------------------------------------------------------------------------------------------
@@ -147,9 +151,11 @@ def test_tetrahedron_is_the_6j_symbol_of_sympy(reader, order):
 @both
 @pytest.mark.parametrize("order", [(0, 1, 2, 3, 4), (1, 0, 2, 3, 4)], ids=["positive", "negative"])
 def test_4_simplex_is_the_15j_symbol(reader, order):
-    """All spins 1/2.  Nodes are tetrahedra in lexicographic order, links run from the smaller to the larger of them.
+    """All spins 1/2.  Nodes are tetrahedra in lexicographic order, links run from the smaller to the larger
+    of them.
 
-    Computed by an independent script, no printed source: contraction of five 4-valent states (Ooguri 1992 for the rule).
+    Computed by an independent script, no printed source: contraction of five 4-valent states (Ooguri 1992
+    for the rule).
     """
     r = float(sqrt(3)) / 12
     table = {
@@ -159,8 +165,9 @@ def test_4_simplex_is_the_15j_symbol(reader, order):
     expected = np.zeros((2,) * 5)
     for key, value in table.items():
         expected[tuple(map(int, key))] = value
-    # node n is slot n: the tetrahedra without corner 0, 1, ..., so in reversed lexicographic order; the legs of a
-    # node are its triangles in reversed order, which multiplies the state by (-1)**(sum of its spins) = 1
+    # node n is slot n: the tetrahedra without corner 0, 1, ..., so in reversed lexicographic order; the
+    # legs of a node are its triangles in reversed order, which multiplies the state by (-1)**(sum of its
+    # spins) = 1
     s = foam([list(order)])
     assert s["nodes/slot"].tolist() == [0, 1, 2, 3, 4]
     sign = sign_of_links(s, [1] * 10, low_to_high=False)
@@ -172,8 +179,9 @@ def test_4_simplex_is_the_15j_symbol(reader, order):
     "spin, value", [(1, 7 / 18), (2, 307 / 1500), (3, 9263 / 73500)], ids=["half", "one", "three halves"]
 )
 def test_sum_of_squares_of_the_15j_symbol(reader, spin, value):
-    """The integral of the product of ten characters over SU(2)^5: J. W. Barrett, "The classical evaluation of relativistic
-    spin networks", Adv. Theor. Math. Phys. 2 (1998) 593, for the integral; values by an independent script."""
+    """The integral of the product of ten characters over SU(2)^5: J. W. Barrett, "The classical evaluation of
+    relativistic spin networks", Adv. Theor. Math. Phys. 2 (1998) 593, for the integral; values by an
+    independent script."""
     assert np.sum(amplitude(foam(sp.simplex(4)), spin, reader) ** 2) == pytest.approx(value, rel=1e-12)
 
 
@@ -182,8 +190,8 @@ def test_sum_of_squares_of_the_15j_symbol(reader, spin, value):
     ("2d-sphere", 2, False), ("2d-torus", 0, False), ("projective-plane", 1, True),
 ])  # fmt: skip
 def test_closed_surface_is_a_sum_over_representations(reader, name, euler, indicator):
-    """sum over j of (2j+1)^chi, with the indicator (-1)^(2j) on the projective plane: G. Frobenius and I. Schur (1906);
-    A. D. Mednykh (1978); E. Witten, "On quantum gauge theories in two dimensions" (1991)."""
+    """sum over j of (2j+1)^chi, with the indicator (-1)^(2j) on the projective plane: G. Frobenius and I.
+    Schur (1906); A. D. Mednykh (1978); E. Witten, "On quantum gauge theories in two dimensions" (1991)."""
     expected = sum((-1) ** (indicator * s) * (s + 1) ** euler for s in range(4))
     assert amplitude(foam(sp.LABELLED[name]), 0, reader, up_to=3) == pytest.approx(expected, rel=1e-12)
 
@@ -211,7 +219,7 @@ def sides(d, k, reader, seeds, fixed=None, **choice):
 def test_move_3_3_keeps_the_tensor(reader):
     """H. Ooguri, "Topological lattice models in four dimensions", Mod. Phys. Lett. A 7 (1992) 2799."""
     sizes = []
-    for one, two in sides(4, 3, reader, seeds=60):
+    for one, two in sides(4, 3, reader, seeds=40):
         np.testing.assert_allclose(one, two, atol=1e-12)
         sizes.append(np.abs(one).max())
     assert np.mean(np.array(sizes) > 1e-6) > 0.9
@@ -239,7 +247,8 @@ def test_move_2_3_keeps_the_tensor(reader):
 @both
 @pytest.mark.parametrize("spin", [0, 1, 2, 3])
 def test_move_1_4_with_one_spin_fixed(reader, spin):
-    """G. Ponzano, T. Regge, "Semiclassical limit of Racah coefficients" (1968): (2j+1)^2 times the tetrahedron."""
+    """G. Ponzano, T. Regge, "Semiclassical limit of Racah coefficients" (1968): (2j+1)^2 times the
+    tetrahedron."""
     for one, two in sides(3, 1, reader, seeds=6, fixed={spin: spin}):
         np.testing.assert_allclose((spin + 1) ** 2 * one, two, atol=1e-12 * (spin + 1) ** 2)
 

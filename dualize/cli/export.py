@@ -33,7 +33,11 @@ def _axes(ctx: click.Context, parameter: click.Parameter, value: str | None) -> 
 @from_option
 @click.option("--as", "kind", required=True, metavar="KIND", help=", ".join(KINDS) + ".")
 @click.option(
-    "-o", "--output", required=True, metavar="PATH", help="Where to write; - is standard output (graphs only)."
+    "-o",
+    "--output",
+    required=True,
+    metavar="PATH",
+    help="Where to write; - is standard output (graphs only).",
 )
 @click.option(
     "--of", "graph", default="dual", show_default=True, metavar="GRAPH", help="Which graph: dual or boundary."
@@ -58,9 +62,9 @@ def command(
 ) -> None:
     """Write a skeleton as tables, matrices, a graph or a mesh, for other programs.
 
-    tables is a directory of CSV files that holds everything; matrices is a directory with the boundary maps as
-    Matrix Market files; graphml, node-link and dot are one of the graphs; vtk is a mesh of the dual one- and
-    two-skeleton, where the corners have coordinates. What a form leaves out is said on standard error.
+    tables is a directory of CSV files that holds everything; matrices is a directory with the boundary maps
+    as Matrix Market files; graphml, node-link and dot are one of the graphs; vtk is a mesh of the dual one-
+    and two-skeleton, where the corners have coordinates. What a form leaves out is said on standard error.
     """
     if kind not in KINDS:
         raise InputError(f"there is no export as {kind!r}", hint="known are: " + ", ".join(KINDS))
@@ -74,7 +78,9 @@ def command(
             raise InputError(f"the projection cannot be read: {error}", projection) from None
     foam = open_input(path, from_kind=from_kind).content
     if not isinstance(foam, Skeleton):
-        raise InputError("this is a triangulation, not a skeleton", path, "build its skeleton first: dualize build")
+        raise InputError(
+            "this is a triangulation, not a skeleton", path, "build its skeleton first: dualize build"
+        )
     with progress(f"writing {output}"):
         export(foam, output, kind, force=force, graph=graph, axes=axes, projection=turn)
     if KINDS[kind].drops:

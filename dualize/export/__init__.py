@@ -102,8 +102,8 @@ def export(
     Raises
     ------
     InputError
-        If the kind is not known, the skeleton has no coordinates where they are needed, something is there already
-        and `force` is false, or it cannot be written.  Then nothing is written.
+        If the kind is not known, the skeleton has no coordinates where they are needed, something is there
+        already and `force` is false, or it cannot be written.  Then nothing is written.
 
     Examples
     --------
@@ -113,7 +113,8 @@ def export(
     >>> with tempfile.TemporaryDirectory() as folder:
     ...     export(s, folder + "/foam", "tables")
     ...     print(*sorted(os.listdir(folder + "/foam")))
-    about.json edges.csv face_edges.csv face_vertices.csv faces.csv links.csv nodes.csv vertices.csv wedges.csv
+    about.json edges.csv face_edges.csv face_vertices.csv faces.csv links.csv nodes.csv vertices.csv
+    wedges.csv
     """
     from . import graphs, matrices, tables, vtk
     from .folder import write_folder
@@ -145,8 +146,9 @@ def read_export(path: str | PathLike[str], kind: str) -> Any:
     ----------
     path : path
     kind : str
-        ``tables`` gives a Skeleton (validated), ``matrices`` the sparse maps ``(d1, d2)``, ``graphml`` and ``node-link`` a
-        `networkx.MultiDiGraph` as `Skeleton.dual_graph` or `Skeleton.boundary_graph` makes it.
+        ``tables`` gives a Skeleton (validated), ``matrices`` the sparse maps ``(d1, d2)``, ``graphml`` and
+        ``node-link`` a `networkx.MultiDiGraph` as `Skeleton.dual_graph` or `Skeleton.boundary_graph` makes
+        it.
 
     Raises
     ------

@@ -1,9 +1,9 @@
 """Dual graph and boundary graph as GraphML, node-link JSON and DOT.
 
-The first two hold the graphs of `Skeleton.dual_graph` and `Skeleton.boundary_graph` with all attributes and give them
-back.  Vertices are named ``v0``, ``v1``, ..., nodes ``n0``, ``n1``, ...  GraphML has no lists: there they are JSON text.
-A dual graph says of every edge which faces pass it and how, but not in which order a face passes its edges.
-DOT is for drawing: it keeps numbers, labels and directions only.
+The first two hold the graphs of `Skeleton.dual_graph` and `Skeleton.boundary_graph` with all attributes and
+give them back.  Vertices are named ``v0``, ``v1``, ..., nodes ``n0``, ``n1``, ...  GraphML has no lists:
+there they are JSON text. A dual graph says of every edge which faces pass it and how, but not in which
+order a face passes its edges. DOT is for drawing: it keeps numbers, labels and directions only.
 """
 
 from __future__ import annotations
@@ -18,7 +18,15 @@ from ..skeleton import Skeleton
 if TYPE_CHECKING:
     import networkx
 
-__all__ = ["GRAPHS", "dot_lines", "from_graphml", "from_node_link", "graph_of", "graphml_lines", "node_link_lines"]
+__all__ = [
+    "GRAPHS",
+    "dot_lines",
+    "from_graphml",
+    "from_node_link",
+    "graph_of",
+    "graphml_lines",
+    "node_link_lines",
+]
 
 GRAPHS = ("dual", "boundary")
 
@@ -98,6 +106,8 @@ def from_graphml(data: bytes) -> networkx.MultiDiGraph:
 
     try:
         flat = networkx.read_graphml(BytesIO(data), edge_key_type=int, force_multigraph=True)
+        for defaults in ("node_default", "edge_default"):
+            flat.graph.pop(defaults, None)
         number = _number(flat)
         return _mapped(flat, number, lambda x: tuple(json.loads(x)) if isinstance(x, str) else x)
     except (ParseError, networkx.NetworkXError, KeyError, TypeError, ValueError) as error:
@@ -110,8 +120,8 @@ def from_graphml(data: bytes) -> networkx.MultiDiGraph:
 def node_link_lines(graph: networkx.MultiDiGraph) -> Iterator[bytes]:
     """A graph as node-link JSON, a line for every node and every edge.
 
-    An object with ``directed``, ``multigraph``, ``graph``, ``nodes`` (each with ``id``) and ``edges`` (each with
-    ``source``, ``target`` and ``key``), as `networkx.node_link_graph` reads it with ``edges="edges"``.
+    An object with ``directed``, ``multigraph``, ``graph``, ``nodes`` (each with ``id``) and ``edges`` (each
+    with ``source``, ``target`` and ``key``), as `networkx.node_link_graph` reads it with ``edges="edges"``.
     """
     name = _name(graph)
     head = json.dumps({"directed": True, "multigraph": True, "graph": graph.graph})

@@ -1,8 +1,8 @@
 """The boundary maps as Matrix Market files: a directory with ``d1.mtx``, ``d2.mtx`` and ``about.json``.
 
-Rows of d1 are the vertices and then the nodes, its columns the edges and then the links; these are the rows of d2,
-and its columns are the faces.  ``d1 d2 = 0``.  The order of the places and of the cells around a face is lost, and
-a cell that a face or an edge visits twice has the sum of its signs.
+Rows of d1 are the vertices and then the nodes, its columns the edges and then the links; these are the rows
+of d2, and its columns are the faces.  ``d1 d2 = 0``.  The order of the places and of the cells around a
+face is lost, and a cell that a face or an edge visits twice has the sum of its signs.
 """
 
 from __future__ import annotations

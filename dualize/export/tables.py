@@ -5,8 +5,8 @@
     face_vertices.csv  face_edges.csv
     segments.csv  coordinates_point.csv  coordinates_corner.csv     where the skeleton has them
 
-Columns are named as the tables of the layout: ``face`` of ``edges/face``, or ``face.0``, ``face.1``, ... where a
-row has several.  The first columns number the cell.  Nothing is lost: further groups stand in
+Columns are named as the tables of the layout: ``face`` of ``edges/face``, or ``face.0``, ``face.1``, ...
+where a row has several.  The first columns number the cell.  Nothing is lost: further groups stand in
 ``about.json``, and `decode` gives the same skeleton back, whatever the order of the rows.
 """
 
@@ -55,7 +55,9 @@ SHEETS = {
     "face_edges.csv": Sheet(("face", "step"), _group("faces", "edge", "edge_sign", "place")),
     "nodes.csv": Sheet(
         ("node",),
-        _group("nodes", "edge", "vertex", "slot", "orientation", "component", "link", "link_leaves", "corners"),
+        _group(
+            "nodes", "edge", "vertex", "slot", "orientation", "component", "link", "link_leaves", "corners"
+        ),
     ),
     "links.csv": Sheet(("link",), _group("links", "source", "target", "face", "twist", "corners")),
     "segments.csv": Sheet(("vertex", "pair"), _group("vertices", "segment", "segment_sign")),
@@ -102,7 +104,9 @@ def _lines(skeleton: Skeleton, name: str, tables: tuple[str, ...]) -> Iterator[b
         array = skeleton[table]
         if table.endswith("_offsets"):
             array = array[:-1]  # where each face begins; the last one ends with the file
-        width = 1 if name in OFFSETS or array.ndim == 1 or TABLES[table].shape[1:] == ("W",) else array.shape[-1]
+        width = (
+            1 if name in OFFSETS or array.ndim == 1 or TABLES[table].shape[1:] == ("W",) else array.shape[-1]
+        )
         columns += _columns(table, width)
         blocks.append(array.reshape(len(rows), width))
     yield (",".join(columns) + "\n").encode()
@@ -111,7 +115,7 @@ def _lines(skeleton: Skeleton, name: str, tables: tuple[str, ...]) -> Iterator[b
         parts = [rows[lo : lo + CHUNK], *(block[lo : lo + CHUNK] for block in blocks)]
         # numbers of cells stay integers beside coordinates
         listed = [part.tolist() for part in parts] if floats else [np.concatenate(parts, axis=1).tolist()]
-        text = (",".join(map(repr, sum(row, []))) for row in zip(*listed, strict=True))
+        text = (",".join(repr(x) for part in row for x in part) for row in zip(*listed, strict=True))
         yield ("\n".join(text) + "\n").encode()
 
 
@@ -156,7 +160,9 @@ def _about(skeleton: Skeleton, sheets: Mapping[str, tuple[str, ...]]) -> bytes:
         "pairs": {"meaning": "pairs (i, j), i < j, that wedges and segments are numbered by", "pairs": pairs},
         "files": files,
         "further": {
-            name: _boxed(value) for name, value in document.items() if name not in TABLES and name not in HEADER
+            name: _boxed(value)
+            for name, value in document.items()
+            if name not in TABLES and name not in HEADER
         },
     }
     return (json.dumps(about_file, indent=1, allow_nan=False) + "\n").encode()
@@ -223,13 +229,12 @@ def _sheet(name: str, data: bytes, about: Mapping[str, Any]) -> dict[str, np.nda
     if (keys[1:] == keys[:-1]).all(axis=1).any():
         twice = keys[1:][(keys[1:] == keys[:-1]).all(axis=1)][0]
         raise InputError(f"a row occurs twice: {_named(sheet.keys, twice)}", name)
-    if len(sheet.keys) == 1 and len(keys) and (keys[:, 0] != np.arange(len(keys))).any():
-        missing = int(np.flatnonzero(keys[:, 0] != np.arange(len(keys)))[0])
-        raise InputError(f"a row is missing: {_named(sheet.keys, [missing])}", name)
+    _complete(name, sheet.keys, keys)
 
     tables, column = {}, len(sheet.keys)
     for table in sheet.tables:
-        width = sum(c == table.split("/")[1] or c.startswith(table.split("/")[1] + ".") for c in columns[column:])
+        key = table.split("/")[1]
+        width = sum(c == key or c.startswith(key + ".") for c in columns[column:])
         if not width:
             continue
         if columns[column : column + width] != _columns(table, width):
@@ -239,7 +244,8 @@ def _sheet(name: str, data: bytes, about: Mapping[str, Any]) -> dict[str, np.nda
         if len(TABLES[table].shape) == 1:
             block = block[:, 0]
         if name in ("wedges.csv", "segments.csv", "coordinates_corner.csv"):
-            block = _by_vertex(block, keys, name, table)
+            width = int(keys[:, 1].max(initial=-1)) + 1
+            block = block.reshape(-1, width, *([] if TABLES[table].shape[1:] == ("W",) else block.shape[1:]))
         tables[table] = block
     if column != len(columns):
         raise InputError(f"there is no column {columns[column]!r} in this file", f"{name}, line 1")
@@ -267,7 +273,9 @@ def _parse(name: str, body: bytes, width: int, floats: bool) -> np.ndarray:
     if not body.strip():
         return np.zeros((0, width), dtype=dtype)
     try:
-        rows = np.loadtxt(io.BytesIO(body), dtype=dtype, delimiter=",", ndmin=2, comments=None, encoding="utf-8")
+        rows = np.loadtxt(
+            io.BytesIO(body), dtype=dtype, delimiter=",", ndmin=2, comments=None, encoding="utf-8"
+        )
     except (ValueError, OverflowError) as error:
         for number, line in enumerate(body.decode("utf-8", "replace").splitlines(), start=2):
             entries = line.split(",")
@@ -286,15 +294,19 @@ def _parse(name: str, body: bytes, width: int, floats: bool) -> np.ndarray:
     return rows
 
 
-def _by_vertex(block: np.ndarray, keys: np.ndarray, name: str, table: str) -> np.ndarray:
-    """Rows by (vertex, second number) as one row for every vertex."""
-    width = int(keys[:, 1].max(initial=-1)) + 1
-    wanted = np.stack(np.divmod(np.arange(len(keys)), max(width, 1)), axis=1)
-    if (keys != wanted).any():
-        at = keys[(keys != wanted).any(axis=1)][0]
-        raise InputError(f"a row is missing before {_named(SHEETS[name].keys, at)}", name)
-    shape = (-1, width) if TABLES[table].shape[1:] == ("W",) else (-1, width, block.shape[-1])
-    return block.reshape(shape)
+def _complete(name: str, names: tuple[str, ...], keys: np.ndarray) -> None:
+    """Refuse sorted numbers of rows that leave one out; those beyond the last are missed by `skeleton_of`."""
+    rows = np.arange(len(keys))
+    if len(names) == 1:
+        wanted = rows[:, None]
+    elif name in OFFSETS:  # steps count from 0 within each face
+        first = np.diff(keys[:, 0], prepend=-1) != 0
+        wanted = np.stack([keys[:, 0], rows - np.maximum.accumulate(np.where(first, rows, 0))], axis=1)
+    else:
+        wanted = np.stack(np.divmod(rows, int(keys[:, 1].max(initial=0)) + 1), axis=1)
+    wrong = (keys != wanted).any(axis=1)
+    if wrong.any():
+        raise InputError(f"a row is missing before {_named(names, keys[wrong][0])}", name)
 
 
 def _named(keys: tuple[str, ...], numbers: Any) -> str:

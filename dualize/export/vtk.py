@@ -1,12 +1,13 @@
 """The dual one- and two-skeleton as a mesh of lines and quadrilaterals, where the corners have coordinates.
 
-Every simplex is drawn in its own chart, so that periodic complexes come out whole: half an edge is the line from the
-barycentre of the simplex to that of a facet, and the wedge of a face the quadrilateral
+Every simplex is drawn in its own chart, so that periodic complexes come out whole: half an edge is the line
+from the barycentre of the simplex to that of a facet, and the wedge of a face the quadrilateral
 
     ridge, facet where the face enters, simplex, facet where it leaves
 
-(the second barycentric subdivision; J. R. Munkres, Elements of Algebraic Topology, 1984, section 64).  Lines run along their
-edges and quadrilaterals turn along their faces.  What is lost: the gluing across charts, except by the numbers.
+(the dual cells of a triangulation; J. R. Munkres, Elements of Algebraic Topology, 1984, section 64).  Lines
+run along their edges and quadrilaterals turn along their faces.  What is lost: the gluing across charts,
+except by the numbers.
 """
 
 from __future__ import annotations
@@ -45,10 +46,10 @@ def dual_mesh(
     Returns
     -------
     meshio.Mesh
-        Cell data ``edge`` and ``face`` (number, -1 where it is none), ``vertex`` (the simplex), ``direction`` (a
-        line: +1 the edge leaves the vertex, -1 it arrives; a quadrilateral: ``wedges/direction``), ``orientation`` (of the
-        simplex) and ``twist`` (of the edge).  Point data ``dimension`` (of the dual cell at the middle of which the point lies) and
-        ``number`` (of that cell).
+        Cell data ``edge`` and ``face`` (number, -1 where it is none), ``vertex`` (the simplex),
+        ``direction`` (a line: +1 the edge leaves the vertex, -1 it arrives; a quadrilateral:
+        ``wedges/direction``), ``orientation`` (of the simplex) and ``twist`` (of the edge).  Point data
+        ``dimension`` (of the dual cell at the middle of which the point lies) and ``number`` (of that cell).
 
     Raises
     ------
@@ -88,7 +89,9 @@ def dual_mesh(
         "face": (np.full_like(edge, -1), face),
         "vertex": (np.broadcast_to(vertex, edge.shape), np.broadcast_to(vertex, face.shape)),
         "direction": (s["vertices/leaves"], s["wedges/direction"]),
-        "orientation": tuple(np.broadcast_to(s["vertices/orientation"][:, None], x.shape) for x in (edge, face)),
+        "orientation": tuple(
+            np.broadcast_to(s["vertices/orientation"][:, None], x.shape) for x in (edge, face)
+        ),
         "twist": (s["edges/twist"][edge], np.zeros_like(face)),
     }
     kinds = np.repeat([0, 1, 2], [1, k, len(pairs)])
@@ -106,7 +109,7 @@ def dual_mesh(
 def charts(skeleton: Skeleton) -> np.ndarray:
     """Coordinates of the corners of every simplex in a chart of its own, shape (V, D + 1, A).
 
-    With a period, every corner is the image next to the first corner of its simplex.
+    One chart for all is cut open at its period: every corner is the image next to the first of its simplex.
 
     Raises
     ------
@@ -115,8 +118,8 @@ def charts(skeleton: Skeleton) -> np.ndarray:
     """
     s = skeleton
     if "coordinates/corner" in s:
-        corner = s["coordinates/corner"]
-    elif "coordinates/point" in s:
+        return s["coordinates/corner"]
+    if "coordinates/point" in s:
         labels = s.arrays.get("vertices/corners", s.arrays.get("vertices/point"))
         if labels is None:
             raise InputError(
@@ -128,7 +131,9 @@ def charts(skeleton: Skeleton) -> np.ndarray:
             raise InputError(f"there are {len(point)} rows of coordinates, and a corner needs another")
         corner = point[labels]
     else:
-        raise InputError("the skeleton has no coordinates", hint="build it from a triangulation that has them")
+        raise InputError(
+            "the skeleton has no coordinates", hint="build it from a triangulation that has them"
+        )
     if "coordinates/period" in s:
         period = s["coordinates/period"]
         step = corner - corner[:, :1]
@@ -160,7 +165,11 @@ def projector(
             )
         return turn
     chosen = list(range(min(3, count))) if axes is None else list(axes)
-    if len(set(chosen)) != len(chosen) or not 1 <= len(chosen) <= 3 or any(not 0 <= a < count for a in chosen):
+    if (
+        len(set(chosen)) != len(chosen)
+        or not 1 <= len(chosen) <= 3
+        or any(not 0 <= a < count for a in chosen)
+    ):
         raise InputError(
             f"there are no such axes: {', '.join(map(str, chosen))}",
             hint=f"name up to three different ones of 0 to {count - 1}",

@@ -241,3 +241,24 @@ def reversed_edge(skeleton, edge):
 def unlabelled_table(facets):
     table = glue_by_labels(facets)
     return Table(table.across, table.carry, table.written)
+
+
+def cut_ring(skeleton, face, length):
+    """An internal face of a closed skeleton ends after `length` visits; the rest becomes the last face."""
+    s, new = skeleton, skeleton.counts["faces_internal"]
+    first, last = s["faces/vertex_offsets"][face : face + 2]
+    rest, after = slice(first + length, last), slice(last, None)
+    a = {name: array.copy() for name, array in s.arrays.items()}
+    for name in ("vertex", "wedge", "edge", "edge_sign", "place"):
+        table = s[f"faces/{name}"]
+        a[f"faces/{name}"] = np.concatenate([table[: first + length], table[after], table[rest]])
+    lengths = [*np.diff(s["faces/vertex_offsets"]), last - first - length]
+    lengths[face] = length
+    for name in ("faces/vertex_offsets", "faces/edge_offsets"):
+        a[name] = np.concatenate([[0], np.cumsum(lengths)]).astype(np.int64)
+    a["wedges/face"][s["faces/vertex"][rest], s["faces/wedge"][rest]] = new
+    a["edges/face"][s["faces/edge"][rest], s["faces/place"][rest]] = new
+    against = int((s["faces/edge_sign"][rest] < 0).sum()) % 2
+    a["faces/against"] = np.append(s["faces/against"], against).astype(np.int8)
+    a["faces/against"][face] ^= against
+    return remade(s, a, counts={"faces_internal": new + 1})

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 from damage import (
     by_reference,
+    cut_ring,
     remade,
     renumbered,
     reversed_edge,
@@ -42,6 +43,7 @@ import dualize
 from dualize import SkeletonError, kernels
 from dualize.check import RULES, check_skeleton
 from dualize.kernels import checks
+from dualize.skeleton import Skeleton
 
 # --------------------------------------------------------------------------------------------------
 # Good skeletons
@@ -317,6 +319,11 @@ def swapped_external_edges(skeleton):
     return remade(swapped, {"nodes/edge": skeleton["nodes/edge"]})
 
 
+def one_vertex():
+    """A closed skeleton with one vertex, so that its rings come back to it by other wedges."""
+    return dualize.build(triangulation(GLUED["tetrahedra_1_2"]))
+
+
 parts = lambda: specimen("several components")  # noqa: E731
 pinched = lambda: specimen("pinched")  # noqa: E731
 WHOLE = {
@@ -390,6 +397,43 @@ WHOLE = {
         r"links/source\[2\]",
         "the external face ends at node",
     ),
+    "external edge between two nodes": (
+        lambda: with_entry(
+            with_entry(bounded(), "edges/source", external_from("target"), (-1, 0)),
+            "edges/target",
+            external_from("target"),
+            (-1, 0),
+        ),
+        r"edges/target\[\d+, 0\]",
+        "only one end of an external edge is a node",
+    ),
+    "place where the face leaves the edge's target": (
+        lambda: other(closed(), "faces/place", first(closed()["faces/edge_sign"] < 0)),
+        r"faces/place\[\d+\]",
+        "at the place of the vertex's corner",
+    ),
+    "place where the face leaves the edge's source": (
+        lambda: other(closed(), "faces/place", first(closed()["faces/edge_sign"] > 0)),
+        r"faces/place\[\d+\]",
+        "at the place of the vertex's corner",
+    ),
+    "one ring as two faces": (
+        lambda: cut_ring(closed(), 4, 2),
+        r"faces/vertex\[12\]",
+        "the edge before leads to vertex",
+    ),
+    "one ring at one vertex as two faces": (
+        lambda: cut_ring(one_vertex(), first(np.diff(one_vertex()["faces/vertex_offsets"]) > 1), 1),
+        r"faces/wedge\[\d+\]",
+        "the face comes here through wedge",
+    ),
+    "one component too many": (
+        lambda: remade(closed(), counts={"components": 2}, flags={"orientable": [True, True]}),
+        "counts/components",
+        "it is 2, but the edges make it 1",
+    ),
+    "link's source": (lambda: other(bounded(), "links/source", 3), r"links/source\[3\]", "ends at node"),
+    "link's target": (lambda: other(bounded(), "links/target", 3), r"links/target\[3\]", "starts at node"),
     "node's edge": (
         lambda: other(bounded(), "nodes/edge", 3),
         r"nodes/edge\[3\]",
@@ -552,6 +596,11 @@ FORM = {
         "48 ends of links",
     ),
     "components": (lambda: remade(bounded(), counts={"components": 5}), "counts/components", "4 vertices"),
+    "missing count": (
+        lambda: Skeleton(3, {"vertices": 1}, bounded().flags, bounded().arrays),
+        "counts/edges_internal",
+        "it is missing",
+    ),
     "unknown count": (lambda: remade(bounded(), counts={"cells": 5}), "counts/cells", "knows no such"),
     "flag that is no truth value": (
         lambda: remade(bounded(), flags={"ordered": 1}),

@@ -257,7 +257,6 @@ def check_faces(
         out = edge_offsets[f]
         external = f >= interior_faces
         least = vertex[first] * w_count + wedge[first]
-        first_wedge = least
         runs_against = 0
         twisted = 0
         q = 0
@@ -333,14 +332,14 @@ def check_faces(
                 if ordered == 0:
                     q = compose[p * n_perm + q]
         if not external:
+            # The list must close.  It cannot come back to its first wedge the other way: half-way round it
+            # would have to cross a facet that is glued to itself.
             s = vertex[first]
             w = wedge[first]
             if t != s:
                 return FACE_VERTEX, first, t
             if w != pair[enter * k + leave]:
                 return FACE_WEDGE, first, pair[enter * k + leave]
-            if (wedge_direction[first_wedge] > 0) != (enter < leave):
-                return WEDGE_DIRECTION, first_wedge, -wedge_direction[first_wedge]
             turned = 0
             for c in range(k):
                 if c != enter and c != leave and image[q * k + c] != c:

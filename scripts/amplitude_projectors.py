@@ -25,6 +25,7 @@ faces that run against the edge, |m> to (-1)**(j - m) <-m|.  The result has one 
 
 import argparse
 import json
+import signal
 from functools import cache
 
 import numpy as np
@@ -164,6 +165,10 @@ def amplitude(foam, boundary, fixed=None, up_to=np.inf):
     internal, inner_edges = c["faces_internal"], c["edges_internal"]
     faces, signs = foam["edges/face"], foam["edges/face_sign"]
     ends = [(np.array(foam[f"edges/{end}"]), foam[f"edges/{end}_corner"]) for end in ("source", "target")]
+    if np.size(boundary) not in (1, c["links"]) or np.min(boundary, initial=0) < 0:
+        raise SystemExit(f"there are {c['links']} links: give a twice-spin for each, or one for all")
+    if any(not 0 <= face < internal for face in fixed or {}):
+        raise SystemExit(f"only internal faces are held fixed: numbers below {internal}")
     given = np.full(internal + c["links"], -1)
     given[internal:] = boundary
     for face, spin in (fixed or {}).items():
@@ -223,4 +228,9 @@ def main():
 
 
 if __name__ == "__main__":
-    main()
+    if hasattr(signal, "SIGPIPE"):
+        signal.signal(signal.SIGPIPE, signal.SIG_DFL)  # a closed pipe ends it quietly
+    try:
+        main()
+    except (KeyError, OSError, ValueError) as error:
+        raise SystemExit(f"error: {error!r}") from None

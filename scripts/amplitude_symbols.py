@@ -26,6 +26,7 @@ D. A. Varshalovich, A. N. Moskalev, V. K. Khersonskii, "Quantum Theory of Angula
 
 import argparse
 import json
+import signal
 from functools import cache, lru_cache
 from itertools import combinations
 from math import factorial, inf, sqrt
@@ -184,6 +185,10 @@ def amplitude(tables, boundary, fixed=None, up_to=inf):
     foam = Foam(tables)
     c = foam.counts
     internal = c["faces_internal"]
+    if np.size(boundary) not in (1, c["links"]) or np.min(boundary, initial=0) < 0:
+        raise SystemExit(f"there are {c['links']} links: give a twice-spin for each, or one for all")
+    if any(not 0 <= face < internal for face in fixed or {}):
+        raise SystemExit(f"only internal faces are held fixed: numbers below {internal}")
     spins = np.full(internal + c["links"], -1)
     spins[internal:] = boundary
     for face, spin in (fixed or {}).items():
@@ -252,4 +257,9 @@ def main():
 
 
 if __name__ == "__main__":
-    main()
+    if hasattr(signal, "SIGPIPE"):
+        signal.signal(signal.SIGPIPE, signal.SIG_DFL)  # a closed pipe ends it quietly
+    try:
+        main()
+    except (KeyError, OSError, ValueError) as error:
+        raise SystemExit(f"error: {error!r}") from None

@@ -156,4 +156,7 @@ def main():
 
 
 if __name__ == "__main__":
-    main()
+    try:
+        main()
+    except (KeyError, OSError, ValueError) as error:
+        raise SystemExit(f"error: {error!r}") from None

@@ -24,6 +24,8 @@ from math import inf, pi, sin
 
 import numpy as np
 
+LARGEST = 2**24  # entries of an array in the sum: 128 MiB
+
 
 def load(path):
     """The tables that are needed, {name: array}, with `dimension` and `counts`; JSON or HDF5 by suffix."""
@@ -122,6 +124,8 @@ def eliminate(tensors):
         touched = [t for t in tensors if name in t[1]]
         number = {n: x for x, n in enumerate(dict.fromkeys(m for _, row in touched for m in row))}
         left = [n for n in number if n != name]
+        if touched[0][0].shape[0] ** len(left) > LARGEST:
+            raise SystemExit(f"the complex is too large: its sum needs an array with {len(left)} axes")
         operands = [x for array, row in touched for x in (array, [number[n] for n in row])]
         array = np.einsum(*operands, [number[n] for n in left], optimize=("greedy", 2**30))
         tensors = [t for t in tensors if name not in t[1]] + [(array, left)]
@@ -139,4 +143,7 @@ def main():
 
 
 if __name__ == "__main__":
-    main()
+    try:
+        main()
+    except (KeyError, OSError, ValueError) as error:
+        raise SystemExit(f"error: {error!r}") from None

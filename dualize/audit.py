@@ -108,7 +108,10 @@ class Report:
             If a name is not known.
         """
         names = checked_names(require)
-        return [f for f in self.findings if f.verdict == "violated" or (f.check in names and not f.good)]
+        absent = sorted(names - {f.check for f in self.findings})
+        return [
+            Finding(name, "property", "undecided", against="it does not apply here") for name in absent
+        ] + [f for f in self.findings if f.verdict == "violated" or (f.check in names and not f.good)]
 
     def to_dict(self) -> dict[str, Any]:
         """The report as plain values, as ``--json`` prints it."""
@@ -144,7 +147,11 @@ def show(figure: Any) -> str:
     """A figure as text: ``9, 36, 84``, or ``3: 21, 4: 27``, or ``Z_2: (1, 0, 1)``."""
 
     def inner(value: Any) -> str:
-        return f"({show(value)})" if isinstance(value, Mapping | list | tuple) and len(value) != 1 else show(value)
+        return (
+            f"({show(value)})"
+            if isinstance(value, Mapping | list | tuple) and len(value) != 1
+            else show(value)
+        )
 
     if isinstance(figure, Mapping):
         return ", ".join(f"{key}: {inner(value)}" for key, value in figure.items()) or "none"
@@ -169,7 +176,8 @@ def checked_names(require: Iterable[str]) -> set[str]:
         if name not in known:
             near = get_close_matches(name, known, 2, 0.5)
             raise InputError(
-                f"the audit has no property or identity {name!r}" + (f"; is it {' or '.join(near)}?" if near else ""),
+                f"the audit has no property or identity {name!r}"
+                + (f"; is it {' or '.join(near)}?" if near else ""),
                 hint=f"properties: {', '.join(PROPERTIES)}; identities: {', '.join(IDENTITIES)}",
             )
     return set(names)
@@ -227,9 +235,10 @@ def audit(
 
     checked_names(require)
     if isinstance(content, Triangulation):
-        skeleton, given = build(content, keep_singular=keep_singular, threads=threads), content
+        skeleton = build(content, keep_singular=keep_singular, threads=threads)
+        triangulation = content
     else:
-        skeleton, given = content, triangulation
-    subject = Subject(skeleton, given, full, threads)
+        skeleton = content
+    subject = Subject(skeleton, triangulation, full, threads)
     findings = tuple(examine(subject))
     return Report(subject.title, findings, dict(subject.seconds))

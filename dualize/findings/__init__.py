@@ -6,13 +6,15 @@ from collections.abc import Callable, Iterator
 from time import perf_counter
 
 from ..audit import Finding
-from . import boundary, counting, homology, space, tables
+from . import boundary, coloured, counting, derived, homology, space, tables
 from .subject import GUDHI_LIMIT, LINK_LIMIT, Subject
 
 __all__ = ["FIGURES", "GUDHI_LIMIT", "IDENTITIES", "LINK_LIMIT", "PROPERTIES", "Subject", "examine"]
 
 # group: (check, names of its identities, properties, figures); the groups are timed apart
-GROUPS: list[tuple[str, Callable[[Subject], Iterator[Finding]], tuple[str, ...], tuple[str, ...], tuple[str, ...]]] = [
+GROUPS: list[
+    tuple[str, Callable[[Subject], Iterator[Finding]], tuple[str, ...], tuple[str, ...], tuple[str, ...]]
+] = [
     ("tables", tables.check_tables, ("layout", "tables", "gluings"), (), ("cells",)),
     ("tables", tables.check_chains, ("d1-d2", "twist"), (), ()),
     ("counting", counting.check_counts, ("counts", "components"), (), ("f-vector", "ridge-degrees")),
@@ -22,6 +24,14 @@ GROUPS: list[tuple[str, Callable[[Subject], Iterator[Finding]], tuple[str, ...],
     ("gudhi", counting.check_euler, ("euler",), (), ()),
     ("gudhi", homology.check_betti, ("euler-betti", "duality"), (), ("betti", "boundary-betti")),
     ("gudhi", homology.check_orientability, ("orientability",), (), ()),
+    ("derived", derived.check_derived, ("derived",), (), ()),
+    (
+        "coloured",
+        coloured.check_coloured,
+        ("bipartite", "sub-graphs", "face-formula", "melonic-degree"),
+        ("melonic",),
+        ("colour-sets", "jackets", "degree"),
+    ),
     ("foam homology", homology.check_foam, ("foam-b0", "foam-b1"), (), ()),
     (
         "space",
@@ -32,6 +42,11 @@ GROUPS: list[tuple[str, Callable[[Subject], Iterator[Finding]], tuple[str, ...],
     ),
     ("space", space.check_coordinates, (), ("volumes", "sides"), ()),
 ]
+# what is asked of some complexes only
+APPLIES: dict[Callable[[Subject], Iterator[Finding]], Callable[[Subject], bool]] = {
+    derived.check_derived: derived.is_subdivided,
+    coloured.check_coloured: coloured.is_coloured,
+}
 IDENTITIES = tuple(name for group in GROUPS for name in group[2])
 PROPERTIES = tuple(name for group in GROUPS for name in group[3])
 FIGURES = tuple(name for group in GROUPS for name in group[4])
@@ -45,6 +60,8 @@ def examine(subject: Subject) -> Iterator[Finding]:
     for group, check, identities, properties, figures in GROUPS:
         start = perf_counter()
         obstacle = None if check is tables.check_tables else subject.obstacle
+        if check in APPLIES and (obstacle is not None or not APPLIES[check](subject)):
+            continue
         if obstacle is None:
             found = list(check(subject))
         else:

@@ -135,7 +135,7 @@ class Triangulation:
         """
         labels, names = _labels(facets)
         if corner_names is not None:
-            names = tuple(corner_names)
+            names = _checked_names(corner_names, labels)
         n, k = labels.shape
         run = engine(n, threads)
         axes = tuple(range(k))
@@ -160,7 +160,7 @@ class Triangulation:
             written=written,
             corners=corners,
             corner_names=names,
-            coordinates=_coordinates(coordinates, labels, corners),
+            coordinates=_sorted_charts(_checked_coordinates(coordinates, n, k, labels), labels),
             matched=True,
         )
 
@@ -221,7 +221,7 @@ class Triangulation:
         labels = None
         if corners is not None:
             labels, names = _labels(corners)
-            corner_names = names if corner_names is None else corner_names
+            corner_names = names if corner_names is None else _checked_names(corner_names, labels)
             if labels.shape != (n, k):
                 raise InputError(f"corners has the shape {labels.shape}, not {(n, k)} as across asks for")
             _check_labels_kept(table, rank, labels)
@@ -235,7 +235,7 @@ class Triangulation:
             written=signs,
             corners=labels,
             corner_names=None if corner_names is None else tuple(corner_names),
-            coordinates=coordinates,
+            coordinates=_checked_coordinates(coordinates, n, k, labels),
             matched=matched,
             coloured=coloured,
         )
@@ -412,7 +412,8 @@ def _labels(facets: Any) -> tuple[np.ndarray, tuple[str, ...] | None]:
     if facets.dtype.kind == "U":
         words, positions = np.unique(facets, return_inverse=True)
         return positions.reshape(facets.shape).astype(np.int64), tuple(words.tolist())
-    if facets.dtype.kind == "u" and facets.size and int(facets.max()) > np.iinfo(np.int64).max:
+    wide = facets.dtype == object and all(isinstance(x, int) for x in facets.flat)
+    if wide or (facets.dtype.kind == "u" and int(facets.max()) > np.iinfo(np.int64).max):
         raise InputError("a label is beyond 64 bits", hint="number the labels anew, or write them as words")
     if facets.dtype.kind not in "iu":
         raise InputError(
@@ -420,6 +421,21 @@ def _labels(facets: Any) -> tuple[np.ndarray, tuple[str, ...] | None]:
             hint="a mixture of numbers and words is written as words throughout",
         )
     return np.ascontiguousarray(facets, dtype=np.int64), None
+
+
+def _checked_names(names: Sequence[str], labels: np.ndarray) -> tuple[str, ...]:
+    """Words in ascending order, one for every label."""
+    words = tuple(names)
+    if any(a >= b for a, b in pairwise(words)):
+        raise InputError("corner_names are not different words in order of code points")
+    if int(labels.min()) < 0 or int(labels.max()) >= len(words):
+        bad = int(np.flatnonzero(((labels < 0) | (labels >= len(words))).any(axis=1))[0])
+        raise InputError(
+            f"there are {len(words)} corner_names, and a label has none",
+            f"simplex {bad}: {_show(labels[bad], None)}",
+            "labels are positions in corner_names, counted from 0",
+        )
+    return words
 
 
 def _dimension(k: int, name: str) -> None:
@@ -672,19 +688,22 @@ def _carry_labels(labels: np.ndarray, across: np.ndarray, names: tuple[str, ...]
 # -- coordinates -----------------------------------------------------------------------------------
 
 
-def _coordinates(given: Any, labels: np.ndarray, corners: np.ndarray) -> Coordinates | None:
-    """Coordinates checked, and corner charts brought into the order of the sorted corners."""
+def _checked_coordinates(given: Any, n: int, k: int, labels: np.ndarray | None) -> Coordinates | None:
+    """Coordinates as arrays of finite numbers, with a row for every label or simplex."""
     if given is None:
         return None
     if not isinstance(given, Coordinates):
         given = Coordinates(point=np.asarray(given))
     point, chart, period = (None if x is None else np.asarray(x, dtype=np.float64) for x in given)
+    for array in (point, chart, period):
+        if array is not None and not np.isfinite(array).all():
+            raise InputError("a coordinate or a period is not a finite number")
     axes = None
     if point is not None:
         if point.ndim != 2:
             raise InputError(f"coordinates have the shape {point.shape}, not (points, axes)")
         axes = point.shape[1]
-        if int(labels.min()) < 0 or int(labels.max()) >= len(point):
+        if labels is not None and (int(labels.min()) < 0 or int(labels.max()) >= len(point)):
             bad = int(np.flatnonzero(((labels < 0) | (labels >= len(point))).any(axis=1))[0])
             raise InputError(
                 f"there are {len(point)} rows of coordinates, and a label has none",
@@ -692,11 +711,20 @@ def _coordinates(given: Any, labels: np.ndarray, corners: np.ndarray) -> Coordin
                 "row p of the coordinates belongs to label p, counted from 0",
             )
     if chart is not None:
-        if chart.ndim != 3 or chart.shape[:2] != labels.shape:
-            raise InputError(f"corner charts have the shape {chart.shape}, not {(*labels.shape, 'axes')}")
+        if chart.ndim != 3 or chart.shape[:2] != (n, k):
+            raise InputError(f"corner charts have the shape {chart.shape}, not {(n, k, 'axes')}")
         axes = chart.shape[2]
-        order = np.argsort(labels, axis=1, kind="stable")
-        chart = np.take_along_axis(chart, order[:, :, None], axis=1)
-    if period is not None and period.shape != (axes,):
-        raise InputError(f"the period has {period.size} entries for {axes} axes")
+    if period is not None and (period.shape != (axes,) or (period < 0).any()):
+        raise InputError(
+            f"the period is {period.tolist()}, not one number for each of {axes} axes",
+            hint="a period is positive, and 0 where there is none",
+        )
     return Coordinates(point, chart, period)
+
+
+def _sorted_charts(given: Coordinates | None, labels: np.ndarray) -> Coordinates | None:
+    """Corner charts brought into the order of the sorted corners."""
+    if given is None or given.corner is None:
+        return given
+    order = np.argsort(labels, axis=1, kind="stable")
+    return given._replace(corner=np.take_along_axis(given.corner, order[:, :, None], axis=1))

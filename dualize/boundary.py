@@ -123,9 +123,9 @@ def boundary_of(
 ) -> Triangulation:
     """The boundary of a triangulation as a triangulation of its own, with the induced orientation.
 
-    Its simplices are the boundary facets in the order of the nodes of the foam.  Where labels name the simplices, the
-    labels are matched anew; each facet counts as positive or negative as the orientation induces it, so that
-    `dualize.build` gives the induced orientation wherever that is consistent.
+    Its simplices are the boundary facets in the order of the nodes of the foam.  Where labels name the
+    simplices, the labels are matched anew; each facet counts as positive or negative as the orientation
+    induces it, so that `dualize.build` gives the induced orientation wherever that is consistent.
 
     Parameters
     ----------
@@ -173,7 +173,7 @@ def boundary_of(
         chart = t.coordinates.corner
         if chart is not None:
             chart = chart[vertex[:, None], corners]
-        # rows of points belong to labels; without labels they belong to classes of points, numbered otherwise here
+        # rows of points belong to labels; without labels to classes of points, numbered otherwise here
         point = t.coordinates.point if t.corners is not None else None
         if chart is not None or point is not None:
             charts = Coordinates(point, chart, t.coordinates.period)

@@ -1,7 +1,8 @@
 """The boundary of the dual against the dual of the boundary.
 
-The boundary triangulation is made from the triangulation alone (labels matched anew, or walks around the ridges)
-and built on its own; then its vertices are the nodes, its edges the links, matched through node and place.
+The boundary triangulation is made from the triangulation alone (labels matched anew, or walks around the
+ridges) and built on its own; then its vertices are the nodes, its edges the links, matched through
+node and place.
 """
 
 from __future__ import annotations
@@ -84,7 +85,9 @@ def _labels(x: Subject) -> list[str]:
     assert x.t.corners is not None
     others = np.array([[c for c in range(d + 1) if c != i] for i in range(d + 1)])
     nodes = x.t.corners[w.vertex[:, None], others[w.slot]]
-    wrong = [f"node {n}: other labels" for n in np.flatnonzero((nodes != s["nodes/corners"]).any(axis=1))[:10]]
+    wrong = [
+        f"node {n}: other labels" for n in np.flatnonzero((nodes != s["nodes/corners"]).any(axis=1))[:10]
+    ]
     rest = np.array([[c for c in range(d) if c != k] for k in range(d)])
     ridges = np.sort(nodes[:, rest], axis=2)  # (B, D, D - 1): the labels of the ridge at each place
     bad = (s["links/corners"][s["nodes/link"]] != ridges).any(axis=2)
@@ -106,11 +109,15 @@ def _signs(x: Subject) -> tuple[str, list[str]]:
     sign = permutations_of(d - 1).sign[w.rank]
     twist = (s["nodes/orientation"][w.there] != -s["nodes/orientation"][:, None] * sign).astype(np.int8)
     for n, k in np.argwhere(s["links/twist"][s["nodes/link"]] != twist)[:10].tolist():
-        wrong.append(f"link {s['nodes/link'][n, k]}: twist {s['links/twist'][s['nodes/link'][n, k]]}, induced {twist[n, k]}")
+        link = s["nodes/link"][n, k]
+        wrong.append(f"link {link}: twist {s['links/twist'][link]}, induced {twist[n, k]}")
     if x.boundary is not None and not wrong:
         wrong += _own_signs(x)
     kept = int((s["links/twist"] == 0).sum())
-    return f"equal at {len(w.vertex)} nodes; {kept} links untwisted, {len(s['links/twist']) - kept} twisted", wrong
+    return (
+        f"equal at {len(w.vertex)} nodes; {kept} links untwisted, {len(s['links/twist']) - kept} twisted",
+        wrong,
+    )
 
 
 def _own_signs(x: Subject) -> list[str]:
@@ -120,10 +127,16 @@ def _own_signs(x: Subject) -> list[str]:
     dual = build(x.boundary, keep_singular=True, threads=x.threads)
     orientable = np.asarray(s.flags["orientable"], dtype=bool)[w.bulk]
     wrong = []
-    for n in np.flatnonzero(orientable & (dual["vertices/orientation"] != s["nodes/orientation"]))[:10].tolist():
-        wrong.append(f"node {n}: orientation {s['nodes/orientation'][n]}, the boundary's own dual has the other")
+    for n in np.flatnonzero(orientable & (dual["vertices/orientation"] != s["nodes/orientation"]))[
+        :10
+    ].tolist():
+        wrong.append(
+            f"node {n}: orientation {s['nodes/orientation'][n]}, the boundary's own dual has the other"
+        )
     if x.boundary.matched:
         bad = orientable[:, None] & (dual["vertices/leaves"] != s["nodes/link_leaves"])
         for n, k in np.argwhere(bad)[:10].tolist():
-            wrong.append(f"node {n}, place {k}: the link there runs against the edge of the boundary's own dual")
+            wrong.append(
+                f"node {n}, place {k}: the link there runs against the edge of the boundary's own dual"
+            )
     return wrong

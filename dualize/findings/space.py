@@ -87,14 +87,20 @@ def check_links(x: Subject) -> Iterator[Finding]:
                 "H_1 not 0": sum(bool(f) for f in links.homology.values()),
             }
         figure[f"{SIMPLEX[m]}s"] = {key: value for key, value in tally.items() if value}
-    yield Finding("links", "figure", "stated", figure or "circles and arcs", "2 a sphere, 0 an odd sphere, 1 a ball")
+    yield Finding(
+        "links", "figure", "stated", figure or "circles and arcs", "2 a sphere, 0 an odd sphere, 1 a ball"
+    )
 
 
 def _manifold(x: Subject, links: Links) -> Finding:
     """A homology manifold: is it a manifold?"""
     if x.d < 4:
         return Finding(
-            "manifold", "property", "yes", "all links are spheres or balls", "decided in this dimension by homology"
+            "manifold",
+            "property",
+            "yes",
+            "all links are spheres or balls",
+            "decided in this dimension by homology",
         )
     open_points = list(links.homology)
     if open_points:
@@ -112,7 +118,7 @@ def _manifold(x: Subject, links: Links) -> Finding:
         "property",
         "yes",
         "all links of points are simply connected",
-        "then spheres or balls by the Poincaré theorem; by homology alone this would be necessary, not enough",
+        "so spheres or balls by the Poincaré theorem; homology alone is necessary, not enough",
     )
 
 
@@ -124,12 +130,18 @@ def check_space(x: Subject) -> Iterator[Finding]:
         return Finding(name, "property", "yes" if yes else "no", figure, against, where)
 
     parts = int(c["components"])
-    yield answer("connected", parts == 1, f"{parts} component{'' if parts == 1 else 's'}", "neighbours across facets")
+    yield answer(
+        "connected", parts == 1, f"{parts} component{'' if parts == 1 else 's'}", "neighbours across facets"
+    )
     yield answer("closed", x.closed, f"{c['nodes']} boundary facets")
     flags = list(map(bool, s.flags["orientable"]))
     bad = [f"component {k}" for k, good in enumerate(flags) if not good]
     yield answer(
-        "orientable", not bad, f"{sum(flags)} of {parts} components", "no twisted edge", named(bad) if bad else ""
+        "orientable",
+        not bad,
+        f"{sum(flags)} of {parts} components",
+        "no twisted edge",
+        named(bad) if bad else "",
     )
     named_by_labels = x.t.corners is not None and x.t.matched
     if x.labels is not None:
@@ -142,7 +154,9 @@ def check_space(x: Subject) -> Iterator[Finding]:
     yield answer(
         "ordered",
         bool(s.flags["ordered"]),
-        "corners ascend at both ends of every edge" if s.flags["ordered"] else "a change of basis at some edges",
+        "corners ascend at both ends of every edge"
+        if s.flags["ordered"]
+        else "a change of basis at some edges",
     )
 
 
@@ -152,8 +166,14 @@ def _regular(x: Subject) -> Finding:
         return Finding("regular", "property", "yes", "no holonomy, no pinched ridge, no twins", "the gluings")
     singular = s["faces/singular"]
     faces = np.flatnonzero(singular)
-    figure = {"holonomy": int((singular & 1).sum()), "pinched": int((singular >> 1).sum()), "twins": int(x.twins)}
-    return Finding("regular", "property", "no", figure, "kept on request", named([f"face {f}" for f in faces.tolist()]))
+    figure = {
+        "holonomy": int((singular & 1).sum()),
+        "pinched": int((singular >> 1).sum()),
+        "twins": int(x.twins),
+    }
+    return Finding(
+        "regular", "property", "no", figure, "kept on request", named([f"face {f}" for f in faces.tolist()])
+    )
 
 
 def check_coordinates(x: Subject) -> Iterator[Finding]:

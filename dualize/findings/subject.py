@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from functools import cached_property
-from typing import TYPE_CHECKING, Any
+from math import factorial
+from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
 
@@ -15,6 +16,7 @@ from ..errors import SkeletonError
 from ..form import check_form
 from ..skeleton import Skeleton
 from ..topology.classes import Census, Classes, census, classes, f_vector
+from ..topology.derived import first_derived
 from ..topology.gluing import gluing_of
 from ..topology.links import Links, link_figures
 from ..triangulation import Triangulation
@@ -22,11 +24,30 @@ from ..triangulation import Triangulation
 if TYPE_CHECKING:
     from gudhi import SimplexTree
 
-__all__ = ["GUDHI_LIMIT", "LINK_LIMIT", "Subject"]
+__all__ = ["GUDHI_LIMIT", "LINK_LIMIT", "Subject", "named"]
 
 # Simplices up to which the costly checks run without --full: about ten seconds of gudhi, two of links.
 GUDHI_LIMIT = 20_000
+PIECES_LIMIT = 30_000  # of a second derived subdivision: 52 tetrahedra, 2 four-simplices
 LINK_LIMIT = 400_000
+
+
+class Witness(NamedTuple):
+    """A simplicial complex that gudhi can hold.
+
+    Attributes
+    ----------
+    facets, boundary : ndarray of int64, shape (N, D + 1), (B, D)
+        Labels of its facets and of its boundary facets.
+    same : bool
+        Whether its simplices are those of the triangulation.
+    who : str
+    """
+
+    facets: np.ndarray
+    boundary: np.ndarray
+    same: bool
+    who: str
 
 
 class Subject:
@@ -42,12 +63,15 @@ class Subject:
     threads : int or None
     """
 
-    def __init__(self, skeleton: Skeleton, given: Triangulation | None, full: bool, threads: int | None) -> None:
+    def __init__(
+        self, skeleton: Skeleton, given: Triangulation | None, full: bool, threads: int | None
+    ) -> None:
         self.s = skeleton
         self.given = given
         self.full = full
         self.threads = threads
         self.seconds: dict[str, float] = {}
+        self.betti: tuple[dict[int, list[int]], str] | None = None  # found by `homology`
 
     # -- can it be read? ---------------------------------------------------------------------------
 
@@ -140,7 +164,7 @@ class Subject:
 
     @cached_property
     def labels(self) -> np.ndarray | None:
-        """Labels that make this a simplicial complex, shape (N, D + 1), ascending; None where there are none."""
+        """Labels that make this a simplicial complex, (N, D + 1), ascending; None where there are none."""
         if self.t.corners is not None and self.t.matched:
             return None if self.twins else self.t.corners
         points = np.sort(self.census.classes[0].number, axis=1).astype(np.int64)
@@ -149,15 +173,41 @@ class Subject:
         return points
 
     @cached_property
-    def boundary_labels(self) -> np.ndarray:
-        """Labels of the boundary facets in the sense of `labels`, ascending, shape (B, D)."""
-        assert self.labels is not None
+    def witness(self) -> Witness | None:
+        """A simplicial complex with this space for gudhi: its own simplices, or those of a subdivision."""
+        if self.no_witness is not None:
+            return None
         matched = self.t.corners is not None and self.t.matched
-        points = self.t.corners if matched else self.census.classes[0].number
-        assert points is not None
-        vertex, slot = np.nonzero(self.t.across < 0)
-        others = np.array([[c for c in range(self.d + 1) if c != i] for i in range(self.d + 1)])
-        return np.sort(points[vertex[:, None], others[slot]], axis=1).astype(np.int64)
+        if self.labels is not None:
+            points = self.t.corners if matched else self.census.classes[0].number
+            assert points is not None
+            return Witness(self.labels, _boundary_facets(self.t, points), True, "gudhi")
+        fine = first_derived(first_derived(self.t))
+        points = classes(fine, 1, threads=self.threads).number
+        facets = points.astype(np.int64)
+        return Witness(
+            facets, _boundary_facets(fine, points), False, "gudhi on the second derived subdivision"
+        )
+
+    @cached_property
+    def no_witness(self) -> str | None:
+        """Why gudhi is not asked, or None."""
+        if (reason := self.over(GUDHI_LIMIT)) is not None:
+            return reason
+        if self.twins:
+            return "several simplices have the same labels"
+        pieces = factorial(self.d + 1) ** 2
+        if self.labels is None and not self.full and self.n * pieces > PIECES_LIMIT:
+            return (
+                f"no simplicial complex, and the second derived subdivision has {self.n * pieces} simplices, "
+                f"limit {PIECES_LIMIT}; --full"
+            )
+        return None
+
+    @cached_property
+    def irregular(self) -> int:
+        """How many simplices are glued to themselves other than by the identity."""
+        return sum(int(level.irregular.sum()) for level in self.census.classes)
 
     @cached_property
     def walk(self) -> BoundaryWalk:
@@ -189,7 +239,7 @@ class Subject:
             return f"links not checked: {reason}"
         if any(len(rows) for rows in self.census.scattered) or self.twins:
             return "some links are disconnected"
-        if any(level.irregular.any() for level in self.census.classes):
+        if self.irregular:
             return "some simplices are glued to themselves"
         assert self.links is not None
         if any(self.links.wrong(m).any() for m in range(1, self.d - 1)) or any(self.links.homology.values()):
@@ -198,19 +248,10 @@ class Subject:
 
     @cached_property
     def tree(self) -> SimplexTree | None:
-        """gudhi's simplex tree, None where it is too large or no simplicial complex."""
+        """gudhi's simplex tree of the witness."""
         from ..topology.gudhi import simplex_tree
 
-        return None if self.no_gudhi else simplex_tree(self.labels)  # type: ignore[arg-type]
-
-    @cached_property
-    def no_gudhi(self) -> str | None:
-        """Why gudhi is not asked, or None."""
-        if (reason := self.over(GUDHI_LIMIT)) is not None:
-            return reason
-        if self.labels is None:
-            return "no simplicial complex, so gudhi cannot hold it"
-        return None
+        return None if self.witness is None else simplex_tree(self.witness.facets)
 
     # -- naming ------------------------------------------------------------------------------------
 
@@ -235,3 +276,10 @@ def named(items: Sequence[Any], total: int | None = None) -> str:
     total = len(items) if total is None else total
     more = f"; and {total - SHOWN} more" if total > SHOWN else ""
     return "; ".join(str(x) for x in items[:SHOWN]) + more
+
+
+def _boundary_facets(t: Triangulation, points: np.ndarray) -> np.ndarray:
+    """The boundary facets by the points at their corners, ascending, int64, shape (B, D)."""
+    vertex, slot = np.nonzero(t.across < 0)
+    others = np.array([[c for c in range(t.dimension + 1) if c != i] for i in range(t.dimension + 1)])
+    return np.sort(points[vertex[:, None], others[slot]], axis=1).astype(np.int64)

@@ -49,7 +49,11 @@ def _tables(x: Subject) -> Finding:
     error = x.table_error
     if error is None:
         return Finding(
-            "tables", "identity", "holds", "every entry agrees with the rest", "the rules of `dualize spec`, one by one"
+            "tables",
+            "identity",
+            "holds",
+            "every entry agrees with the rest",
+            "the rules of `dualize spec`, one by one",
         )
     table = (error.where or "").split("[")[0]
     other = EXPLAINED.get(table)
@@ -83,7 +87,9 @@ def _gluings(x: Subject) -> Finding:
         mine, theirs = getattr(found, name), getattr(given, name)
         if (mine is None) != (theirs is None):
             word = "has labels" if mine is not None else "has no labels"
-            return Finding("gluings", "identity", "violated", f"the skeleton {word}", "the triangulation given")
+            return Finding(
+                "gluings", "identity", "violated", f"the skeleton {word}", "the triangulation given"
+            )
         if mine is None:
             continue
         if mine.shape != theirs.shape:
@@ -96,7 +102,9 @@ def _gluings(x: Subject) -> Finding:
             what = "other labels" if name == "corners" else "other gluings"
             return Finding("gluings", "identity", "violated", what, "the triangulation given", where)
     if given.corner_names != found.corner_names:
-        return Finding("gluings", "identity", "violated", "other words for the labels", "the triangulation given")
+        return Finding(
+            "gluings", "identity", "violated", "other words for the labels", "the triangulation given"
+        )
     pairs = f"{x.s.counts['edges_internal']} gluings read from the edges are those of the triangulation"
     return Finding("gluings", "identity", "holds", pairs, "the triangulation given")
 
@@ -134,9 +142,13 @@ def check_chains(x: Subject) -> Iterator[Finding]:
     against = "the signed edges of every face, plus its link, summed at vertices and nodes"
     if len(bad):
         where = named([f"face {f}" for f in bad[:10].tolist()], len(bad))
-        yield Finding("d1-d2", "identity", "violated", f"not 0 on {len(bad)} of {faces} faces", against, where)
+        yield Finding(
+            "d1-d2", "identity", "violated", f"not 0 on {len(bad)} of {faces} faces", against, where
+        )
     else:
-        yield Finding("d1-d2", "identity", "holds", f"0 on {faces} faces, {links} of them with a link", against)
+        yield Finding(
+            "d1-d2", "identity", "holds", f"0 on {faces} faces, {links} of them with a link", against
+        )
 
     inner = offsets[interior]
     odd = np.zeros(interior, dtype=bool)

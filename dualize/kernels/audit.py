@@ -3,7 +3,9 @@
 __all__ = ["close_faces", "glue_edges", "join_simplices", "number_simplices", "walk_boundary"]
 
 
-def glue_edges(source, target, source_corner, target_corner, ranks, inverse, across, rank, axes, interior, lo, hi):
+def glue_edges(
+    source, target, source_corner, target_corner, ranks, inverse, across, rank, axes, interior, lo, hi
+):
     """Read the gluings of the edges `lo` to `hi` back into `across` and `rank`.
 
     `across` must be -2 everywhere at the start; external edges (from `interior` on) leave -1 behind.  The
@@ -54,7 +56,18 @@ def glue_edges(source, target, source_corner, target_corner, ranks, inverse, acr
 
 
 def close_faces(
-    edge_offsets, face_edge, face_sign, source, target, link_source, link_target, open_face, axes, interior, lo, hi
+    edge_offsets,
+    face_edge,
+    face_sign,
+    source,
+    target,
+    link_source,
+    link_target,
+    open_face,
+    axes,
+    interior,
+    lo,
+    hi,
 ):
     """Mark in `open_face` the faces of `lo` to `hi` whose edges, with the link, are no closed walk.
 
@@ -103,7 +116,9 @@ def close_faces(
     return open_faces
 
 
-def join_simplices(across, rank, member, image, turn, compose, inverse, parent, up, irregular, axes, subsets, n):
+def join_simplices(
+    across, rank, member, image, turn, compose, inverse, parent, up, irregular, axes, subsets, n
+):
     """Join the simplices of one dimension that gluings identify, with the maps of their corners.
 
     Simplex ``s * subsets + a`` has the corners of subset `a`; `member` (subsets, K) is 1 where the subset

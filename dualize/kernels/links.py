@@ -1,9 +1,10 @@
 """Kernels that ask whether the links of the points are simply connected, all links at once.
 
-The link of a point is a complex of dimension D - 1 whose top simplices are the corners ``s * K + c`` of the
-triangulation; its *generators* cross its facets, the half-generator ``(s * K + c) * K + i`` through slot i,
-and its *rings* go around its ridges, with the items ``(s * K + c) * W + pair[i, j]``.  Generators of a spanning
-forest are trivial; a ring that meets just one generator not known to be trivial, and once, shows that it is.
+The link of a point is a complex of dimension D - 1 whose top simplices are the corners ``s * K + c`` of
+the triangulation; its *generators* cross its facets, the half-generator ``(s * K + c) * K + i`` through slot
+i, and its *rings* go around its ridges, with the items ``(s * K + c) * W + pair[i, j]``.  Generators of a
+spanning forest are trivial; a ring that meets just one generator not known to be trivial, and once, shows
+that it is.
 """
 
 __all__ = ["kill_generators", "lay_rings", "span_links"]
@@ -128,7 +129,7 @@ def kill_generators(across, rank, image, pair, slots, known, ring, unknown, stac
         known[(across[s * k + b] * k + image[p * k + c]) * k + image[p * k + b]] = 1
         # every passage through this generator leaves one wedge on this side of it
         for a in range(k):
-            if a == c or a == b:
+            if a == c or a == b:  # noqa: SIM109 (numba knows no tuples of two widths)
                 continue
             lead = ring[(s * k + c) * w_count + pair[a * k + b]]
             if lead >= 0:

@@ -7,6 +7,7 @@ identity, as a segment that is glued to itself reversed.
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from functools import cache
 from itertools import combinations
 from typing import NamedTuple
@@ -18,10 +19,20 @@ from ..kernels.audit import join_simplices, number_simplices
 from ..kernels.permutations import permutations_of
 from ..triangulation import Triangulation
 
-__all__ = ["Census", "Classes", "census", "classes", "corner_subsets", "count_rows", "distinct_simplices", "f_vector"]
+__all__ = [
+    "Census",
+    "Classes",
+    "census",
+    "classes",
+    "corner_subsets",
+    "count_rows",
+    "distinct_simplices",
+    "f_vector",
+]
 
 
-class Classes(NamedTuple):
+@dataclass(frozen=True, eq=False)
+class Classes:
     """The classes of the simplices with m corners.
 
     Attributes
@@ -43,6 +54,7 @@ class Classes(NamedTuple):
 
     @property
     def count(self) -> int:
+        """How many classes there are."""
         return len(self.first)
 
 
@@ -56,7 +68,7 @@ def corner_subsets(dimension: int, m: int) -> np.ndarray:
 
 @cache
 def _moves(dimension: int, m: int) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-    """For every permutation p and subset a: its image, the rank of the map of the ascending corners; members."""
+    """For every permutation and subset: its image and the map of the ascending corners; then members."""
     subsets = corner_subsets(dimension, m)
     tables, small = permutations_of(dimension), permutations_of(m - 1)
     code = {tuple(row): number for number, row in enumerate(subsets.tolist())}
@@ -77,7 +89,7 @@ def classes(triangulation: Triangulation, m: int, *, threads: int | None = None)
 
     Examples
     --------
-    Two tetrahedra glued along all their facets by the identity have the points, segments and triangles of one:
+    Two tetrahedra glued along all their facets have the points, segments and triangles of one:
 
     >>> across = [[1, 1, 1, 1], [0, 0, 0, 0]]
     >>> t = Triangulation.from_gluings(across, [[[0, 1, 2, 3]] * 4] * 2)

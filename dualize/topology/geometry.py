@@ -1,8 +1,8 @@
 """What coordinates say of a triangulation, from differences within its simplices only.
 
-Only differences within one simplex are taken, so a seam of a periodic chart raises no alarm: with one chart for
-all and a period they are brought to the nearest image, and with a chart for each simplex neighbours are compared
-after translation.
+Only differences within one simplex are taken, so a seam of a periodic chart raises no alarm: with one chart
+for all and a period they are brought to the nearest image, and with a chart for each simplex neighbours are
+compared after translation.
 """
 
 from __future__ import annotations
@@ -29,8 +29,8 @@ class Shapes(NamedTuple):
     flat : ndarray of int64, shape (n,)
         Simplices of zero volume.
     folded : ndarray of int64, shape (m, 2), or None
-        Half-facets ``(simplex, slot)`` whose two simplices lie on the same side; None unless there are as many
-        axes as dimensions.  Flat simplices have no side and are left out.
+        Half-facets ``(simplex, slot)`` whose two simplices lie on the same side; None unless there are as
+        many axes as dimensions.  Flat simplices have no side and are left out.
     apart : ndarray of int64, shape (m, 2)
         Half-facets whose corners have other differences in the two charts.
     smallest, largest : float
@@ -46,7 +46,7 @@ class Shapes(NamedTuple):
 
 
 def shapes(triangulation: Triangulation, points: np.ndarray | None = None) -> Shapes | None:
-    """Volumes and sides, or None where the coordinates say nothing: there are none, or fewer axes than dimensions.
+    """Volumes and sides, or None where there are no coordinates, or fewer axes than dimensions.
 
     Parameters
     ----------

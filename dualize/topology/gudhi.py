@@ -11,7 +11,8 @@ if TYPE_CHECKING:
 
 __all__ = ["PRIMES", "betti_numbers", "cone_off", "simplex_tree", "simplices_per_dimension"]
 
-# The fields of the Betti numbers: torsion of even order shows in the first, none of small order in the second.
+# The fields of the Betti numbers: torsion of even order shows in the first, none of small order in
+# the second.
 # (gudhi tabulates inverses in time p^2: 0.1 s here, over a second near its largest prime.)
 PRIMES = (2, 9973)
 
@@ -49,7 +50,7 @@ def betti_numbers(tree: SimplexTree, prime: int) -> list[int]:
 
 
 def cone_off(facets: np.ndarray, boundary: np.ndarray) -> np.ndarray:
-    """The complex with a cone over its boundary: its homology is that relative to the boundary, from H_1 on."""
+    """The complex with a cone over its boundary: from H_1 on it has the homology relative to it."""
     if not len(boundary):
         return facets
     apex = int(facets.max()) + 1

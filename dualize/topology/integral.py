@@ -19,8 +19,8 @@ def abelian_group(generators: int, relators: list[dict[int, int]]) -> list[int]:
 
     Notes
     -----
-    Generators with exponent +1 or -1 are eliminated first, the sparsest relator first; what is left goes through
-    the Smith normal form.  Exact integers throughout.
+    Generators with exponent +1 or -1 are eliminated first, the sparsest relator first; what is left goes
+    through the Smith normal form.  Exact integers throughout.
 
     Examples
     --------
@@ -38,9 +38,9 @@ def abelian_group(generators: int, relators: list[dict[int, int]]) -> list[int]:
     ready = sorted(rows, key=lambda x: -len(rows[x]))
     while ready:
         x = ready.pop()
-        row = rows.get(x)
-        units = [g for g, e in row.items() if abs(e) == 1] if row else []
-        if not row or not units:
+        row = rows.get(x, {})
+        units = [g for g, e in row.items() if abs(e) == 1]
+        if not units:
             continue
         g = min(units, key=lambda h: len(where[h]))
         del rows[x]

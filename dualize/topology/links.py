@@ -7,8 +7,8 @@ links of interior simplices are spheres and those of boundary simplices are ball
 * links of dimension 2 are surfaces, so the Euler characteristic decides (classification of surfaces): 2 is a
   sphere, 1 with boundary a disc.  For D <= 3 this settles the question;
 * links of dimension 3 (points of a 4-dimensional triangulation) are compact 3-manifolds where all links of
-  segments are spheres or discs.  With H_1 = 0 over the integers they have the homology of a sphere or ball, by
-  duality.  If moreover the fundamental group is seen to be trivial they are spheres or balls (G. Perelman,
+  segments are spheres or discs.  With H_1 = 0 over the integers they have the homology of a sphere or ball,
+  by duality.  If moreover the fundamental group is seen to be trivial they are spheres or balls (G. Perelman,
   2002-2003, the Poincaré conjecture; from memory).  The search eliminates generators one by one: it finds the
   group trivial, or finds nothing.  A homology sphere such as Poincaré's has H_1 = 0 and stays undecided.
 
@@ -80,7 +80,8 @@ def link_figures(triangulation: Triangulation, census: Census, *, threads: int |
         euler.append(chi)
         boundary.append(touched)
         expected.append(np.where(touched, 1, 1 + (-1) ** (d - m)))
-    simply, homology = None, {}
+    simply: np.ndarray | None = None
+    homology: dict[int, list[int]] = {}
     if d == 4:
         doubtful = np.zeros(len(euler[0]), dtype=bool)
         bad = census.classes[1].irregular | (euler[1] != expected[1])
@@ -101,7 +102,10 @@ def _euler(t: Triangulation, census: Census, m: int) -> tuple[np.ndarray, np.nda
         subsets = corner_subsets(d, size)
         # the m corners of each subset, as numbers of subsets
         inside = np.array(
-            [[code[tuple(row[list(pick)])] for pick in corner_subsets(size - 1, m).tolist()] for row in subsets]
+            [
+                [code[tuple(row[list(pick)])] for pick in corner_subsets(size - 1, m).tolist()]
+                for row in subsets
+            ]
         )
         if size == d + 1:
             rows = number[:, inside[0]]
@@ -164,10 +168,12 @@ def _fundamental_groups(
             q = image[t.rank[s, i]]
             there = (int(t.across[s, i]) * k + int(q[c])) * k + int(q[i])
             letters[p].setdefault(min((s * k + c) * k + i, there), len(letters[p]) + 1)
-    for item in lead[unknown[lead] > 0].tolist():
+    for item in lead[np.greater(unknown[lead], 0)].tolist():
         corner = item // w
         if (p := int(point[corner // k, corner % k])) in letters:
-            words[p].append([letters[p][abs(x) - 1] * (1 if x > 0 else -1) for x in _ring(t, image, live, item, slots)])
+            words[p].append(
+                [letters[p][abs(y) - 1] * (1 if y > 0 else -1) for y in _ring(t, image, live, item, slots)]
+            )
     for p, relators in words.items():
         if {abs(x) for r in relators for x in r} == set(letters[p].values()) and collapses(relators):
             simply[p] = True
@@ -178,7 +184,7 @@ def _fundamental_groups(
 
 
 def _ring(t: Triangulation, image: np.ndarray, live: np.ndarray, item: int, slots: np.ndarray) -> list[int]:
-    """The generators that are left on a ring, in order: 1 + smaller half-generator, negative from the larger."""
+    """The generators left on a ring in order: 1 + smaller half-generator, negative from the larger."""
     k = t.dimension + 1
     s, c = divmod(item // len(slots), k)
     a, b = (int(x) for x in slots[item % len(slots)])

@@ -90,8 +90,8 @@ def simplex_maps(triangulation: Triangulation, census: Census, facets: Classes) 
     for m, level in enumerate(levels, 1):
         if level.irregular.any():
             raise TriangulationError(
-                f"{int(level.irregular.sum())} simplices with {m} corners are glued to themselves other than by "
-                "the identity, so they carry no chain"
+                f"{int(level.irregular.sum())} simplices with {m} corners are glued to themselves, other "
+                "than by the identity, so they carry no chain"
             )
     maps = []
     for m in range(2, d + 2):

@@ -73,8 +73,8 @@ def betti_numbers(maps: Sequence[csc_array], prime: int) -> list[int]:
 def foam_betti(d1: csc_array, d2: csc_array, prime: int) -> tuple[int, int]:
     """b_0 and b_1 of the foam over the field of `prime` elements.
 
-    The rank of d1 is that of its graph, whatever the prime.  That of d2 is not changed by leaving out the edges of a
-    spanning forest, because a cycle is known by its other edges.
+    The rank of d1 is that of its graph, whatever the prime.  That of d2 is not changed by leaving out the
+    edges of a spanning forest, because a cycle is known by its other edges.
     """
     from scipy.sparse import csr_array
     from scipy.sparse.csgraph import breadth_first_order, connected_components

@@ -1,6 +1,8 @@
 """Writing: nothing is overwritten unasked, and a file is there whole or not at all."""
 
 import errno
+import gc
+import io
 import os
 import subprocess
 import sys
@@ -11,7 +13,7 @@ import pytest
 import specimens as sp
 
 from dualize import InputError, Triangulation, build, load, read
-from dualize.formats import encode, registry, target, write
+from dualize.formats import encode, hdf5, registry, target, write
 
 T = Triangulation.from_facets(sp.chain(4, 30))
 FOAM = build(T)
@@ -127,6 +129,24 @@ def test_a_full_disk_leaves_the_old_file(tmp_path, suffix):
     assert done.stderr == ""
     assert path.read_bytes() == b"old"
     assert os.listdir(tmp_path) == [path.name]
+
+
+@pytest.mark.parametrize("failure", [KeyboardInterrupt, OSError], ids=lambda e: e.__name__)
+@pytest.mark.parametrize("call", [1, 3, 10])
+def test_a_failure_inside_the_hdf5_library_comes_out(tmp_path, failure, call, capfd):
+    class Failing(io.BytesIO):
+        calls = 0
+
+        def write(self, data):
+            self.calls += 1
+            if self.calls == call:
+                raise failure
+            return super().write(data)
+
+    with pytest.raises(failure):
+        hdf5.write(FOAM, target.Target(Failing(), path="somewhere"))
+    gc.collect()
+    assert capfd.readouterr() == ("", "")
 
 
 def test_a_directory_that_does_not_exist(tmp_path):

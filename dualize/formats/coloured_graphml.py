@@ -11,8 +11,7 @@ names one that does not exist, and joins edges of the same id.
 
 from __future__ import annotations
 
-from typing import Any
-from xml.etree import ElementTree
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -23,6 +22,9 @@ from .coloured_csv import drops, note_absent
 from .registry import Content, Format, Options
 from .source import Source
 from .target import Target
+
+if TYPE_CHECKING:
+    from xml.etree import ElementTree
 
 __all__ = ["FORMAT"]
 
@@ -43,6 +45,8 @@ def sniff(head: bytes) -> bool:
 
 def read(source: Source, options: Options) -> tuple[Content, str]:
     """Read a coloured graph."""
+    from xml.etree import ElementTree
+
     try:
         root = ElementTree.fromstring(source.take())
     except ElementTree.ParseError as error:

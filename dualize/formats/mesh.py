@@ -7,10 +7,9 @@ refused.  Coordinates are kept as they are, with as many axes as the file has.
 
 from __future__ import annotations
 
-import io
 import os
-import tempfile
 from contextlib import redirect_stderr, redirect_stdout
+from io import StringIO
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -107,6 +106,8 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
     if source.path is not None:
         mesh, kind = _load(source.path, suffix)
     else:
+        import tempfile
+
         with tempfile.TemporaryDirectory(prefix="dualize-") as folder:
             path = os.path.join(folder, "mesh" + suffix)
             with open(path, "wb") as file:
@@ -128,7 +129,7 @@ def _load(path: str, suffix: str) -> tuple[meshio.Mesh, str]:
     """The mesh, whatever meshio prints or raises on the way."""
     import meshio
 
-    said = io.StringIO()
+    said = StringIO()
     reasons = []
     for kind in KINDS[suffix]:
         try:
@@ -136,7 +137,7 @@ def _load(path: str, suffix: str) -> tuple[meshio.Mesh, str]:
                 return meshio.read(path, file_format=kind), kind
         except (Exception, SystemExit) as error:  # readers of damaged files raise anything, or exit
             reasons.append(_reason(error, said.getvalue()))
-        said = io.StringIO()
+        said = StringIO()
     kinds = " or ".join(KINDS[suffix])
     raise InputError(
         f"the mesh cannot be read as {kinds}: {reasons[0]}", hint="is the file whole, and of that kind?"

@@ -12,9 +12,7 @@ The same content gives the same bytes: members have a fixed date.
 
 from __future__ import annotations
 
-import zipfile
-import zlib
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -25,6 +23,9 @@ from .npy import npy_bytes, read_array
 from .registry import Content, Format, Options
 from .source import Source, check_unpacked
 from .target import Target
+
+if TYPE_CHECKING:
+    import zipfile
 
 __all__ = ["FORMAT"]
 
@@ -39,6 +40,9 @@ def sniff(head: bytes) -> bool:
 
 def read(source: Source, options: Options) -> tuple[Content, str]:
     """Read a NPZ file."""
+    import zipfile
+    import zlib
+
     try:
         with zipfile.ZipFile(source.file) as archive:
             members = _members(archive, source.size)
@@ -78,6 +82,8 @@ def _shape(archive: zipfile.ZipFile, info: zipfile.ZipInfo, name: str) -> tuple[
 
 def write(content: Content, target: Target) -> None:
     """Write a NPZ file."""
+    import zipfile
+
     method = zipfile.ZIP_DEFLATED if target.compress else zipfile.ZIP_STORED
     document = document_of(content, target.gluing)
     with zipfile.ZipFile(target.stream, "w", method, allowZip64=True) as archive:

@@ -7,7 +7,6 @@ suffix: the first whose `sniff` knows the first bytes is taken, else the last; p
 from __future__ import annotations
 
 from collections.abc import Callable
-from difflib import get_close_matches
 from functools import cache
 from importlib import import_module
 from typing import NamedTuple
@@ -184,6 +183,8 @@ def by_kind(kind: str) -> tuple[list[Format], str]:
     suffix = name if name.startswith(".") else f".{name}"
     if found := [f for f in formats().values() if suffix in f.suffixes]:
         return found, suffix
+    from difflib import get_close_matches
+
     near = get_close_matches(name, formats(), 1, 0.5)
     raise InputError(
         f"there is no format {kind}" + (f"; is it {near[0]}?" if near else ""),
@@ -202,6 +203,8 @@ def by_suffix(path: str, writing: bool = False) -> tuple[list[Format], str]:
         plain = suffix.removesuffix(".gz")
         if plain != suffix and (found := [f for f in formats().values() if f.packed and plain in f.suffixes]):
             return found, plain
+    from difflib import get_close_matches
+
     suffix = base[dots[-1] :] if dots and dots[-1] < len(base) - 1 else ""
     able = [f for f in formats().values() if (f.write if writing else f.read) is not None]
     suffixes = [s for f in able for s in f.suffixes]

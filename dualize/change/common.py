@@ -3,20 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from ..errors import InputError, LimitError
-from ..kernels import engine
-from ..kernels.orient import spread_orientation
-from ..kernels.permutations import permutations_of
-from ..topology.classes import classes, corner_subsets
 from ..triangulation import Coordinates, Triangulation
+from .record import Moves
 
 if TYPE_CHECKING:
-    from .record import Moves
+    from ..skeleton import Skeleton
 
 __all__ = ["Changed"]
 
@@ -41,9 +38,16 @@ class Changed:
 
     triangulation: Triangulation
     refined_from: np.ndarray
-    new_labels: Sequence[int] | Sequence[str] = ()
+    new_labels: Sequence[int | str] = ()
     notes: tuple[str, ...] = ()
     moves: Moves | None = None
+
+    def build(self, **settings: Any) -> Skeleton:
+        """The foam skeleton of the result, with `refined_from` as a further group; see `dualize.build`."""
+        from ..build import build
+
+        skeleton = build(self.triangulation, **settings)
+        return replace(skeleton, extra={**skeleton.extra, "refined_from/simplex": self.refined_from})
 
     def __repr__(self) -> str:
         parts = [repr(self.triangulation)]
@@ -115,7 +119,9 @@ def label_numbers(t: Triangulation, words: Sequence[Any], *, unknown: bool = Fal
             try:
                 x = int(word)
             except ValueError:
-                raise InputError(f"{word!r} is no label of this complex", hint="its labels are integers") from None
+                raise InputError(
+                    f"{word!r} is no label of this complex", hint="its labels are integers"
+                ) from None
             there = bool(t.corners is not None and (t.corners == x).any())
         if not there and not unknown:
             raise InputError(f"no simplex has the label {word!r}", hint="see the labels of the input")
@@ -213,77 +219,6 @@ def as_written_chart(t: Triangulation, chart: np.ndarray) -> np.ndarray:
     return out
 
 
-def labels_name_simplices(t: Triangulation, labels: np.ndarray) -> bool:
-    """Whether simplices of `t`, as classes under its gluings, are told apart by these labels of the corners.
-
-    The labels (N, D + 1) must agree across gluings.  If they do, `t` is the simplicial complex on them.
-    """
-    k = t.dimension + 1
-    ordered = np.sort(labels, axis=1)
-    if (ordered[:, 1:] == ordered[:, :-1]).any():
-        return False
-    sort = np.argsort(labels, axis=1)
-    place = np.argsort(sort, axis=1)
-    for m in [k, *range(1, k)]:
-        if m == k:
-            rows = ordered
-        else:
-            first = classes(t, m).first
-            subsets = corner_subsets(k - 1, m)
-            row, column = np.divmod(first, len(subsets))
-            chosen = np.sort(np.take_along_axis(place[row], subsets[column], axis=1), axis=1)
-            rows = np.take_along_axis(ordered[row], chosen, axis=1)
-        rows = rows[np.lexsort(rows.T[::-1])]
-        if (rows[1:] == rows[:-1]).all(axis=1).any():
-            return False
-    return True
-
-
-def by_labels(
-    across: np.ndarray,
-    rank: np.ndarray,
-    written: np.ndarray,
-    labels: np.ndarray,
-    words: Sequence[str] | None,
-    point: np.ndarray | None = None,
-    period: np.ndarray | None = None,
-) -> Triangulation:
-    """The labelled complex of a gluing table whose simplices these labels tell apart.
-
-    The corners are sorted, and the gluings with them.  With `words`, label x stands for ``words[x]``.  Row x
-    of `point` belongs to label x.
-    """
-    k = labels.shape[1]
-    tables = permutations_of(k - 1)
-    names = None
-    if words is not None:
-        used = np.unique(labels)
-        order = sorted(used.tolist(), key=words.__getitem__)
-        position = np.zeros(len(words), dtype=np.int64)
-        position[order] = np.arange(len(order))
-        names = tuple(words[x] for x in order)
-        labels = position[labels]
-        point = None if point is None else point[order]
-    inner = across >= 0
-    sort = np.argsort(labels, axis=1)
-    if np.array_equal(sort, np.broadcast_to(np.arange(k), sort.shape)):
-        there = tables.image[rank, np.arange(k)]
-    else:
-        place = np.argsort(sort, axis=1)
-        there = place[np.where(inner, across, 0), tables.image[rank, np.arange(k)].astype(np.int64)]
-        across, there, labels = (np.take_along_axis(x, sort, axis=1) for x in (across, there, labels))
-        written = written * tables.sign[tables.rank(sort)]
-    return Triangulation(
-        across=across.astype(np.int32),
-        rank=np.where(across >= 0, tables.keeping[np.arange(k), there], 0).astype(np.uint8),
-        written=written.astype(np.int8),
-        corners=labels.astype(np.int64),
-        corner_names=names,
-        coordinates=None if point is None else Coordinates(point=point, period=period),
-        matched=True,
-    )
-
-
 def pruned(t: Triangulation) -> Triangulation:
     """`t` without the words that no corner bears any more."""
     if t.corner_names is None or t.corners is None:
@@ -302,63 +237,35 @@ def pruned(t: Triangulation) -> Triangulation:
     )
 
 
-# -- orientation -----------------------------------------------------------------------------------
-
-
-def orientations(t: Triangulation) -> tuple[np.ndarray, np.ndarray]:
-    """Orientation and component of every simplex, as `build` finds them."""
-    n, k = t.across.shape
-    out = np.zeros(n, dtype=np.int8)
-    component, queue = np.empty((2, n), dtype=t.across.dtype)
-    sign = permutations_of(k - 1).sign
-    flat = (t.across.ravel(), t.rank.ravel(), sign, t.written, out, component, queue)
-    engine(n)(spread_orientation, *flat, tuple(range(k)))
-    return out, component
-
-
-def oriented_as(t: Triangulation, wanted: np.ndarray) -> Triangulation:
-    """`t` with the first simplex of each component written so that it has the orientation `wanted` there."""
-    _, component = orientations(t)
-    first = np.unique(component, return_index=True)[1]
-    if np.array_equal(t.written[first], wanted[first]):
-        return t
-    written = t.written.copy()
-    written[first] = wanted[first]
-    return with_fields(t, written=written)
-
-
 def with_fields(t: Triangulation, **fields: Any) -> Triangulation:
     """`t` with some of its fields exchanged."""
-    import dataclasses
-
-    return dataclasses.replace(t, **fields)
+    return replace(t, **fields)
 
 
-# -- coordinates -----------------------------------------------------------------------------------
+def new_label(t: Triangulation, label: int | str) -> int | str:
+    assert t.corners is not None
+    if t.corner_names is not None:
+        if str(label) in t.corner_names:
+            raise InputError(f"the label {label!r} is in use already", hint="the new point needs a new one")
+        return str(label)
+    try:
+        value = int(label)
+    except ValueError:
+        raise InputError(
+            f"the new label {label!r} is no integer", hint="the labels here are integers"
+        ) from None
+    if not -(2**63) <= value < 2**63:
+        raise InputError(f"the new label {label} is beyond 64 bits")
+    if (t.corners == value).any():
+        raise InputError(f"the label {value} is in use already", hint="the new point needs a new one")
+    return value
 
 
-def charts(t: Triangulation) -> np.ndarray | None:
-    """Coordinates of the corners of every simplex, (N, D + 1, A), the images nearest to its first corner."""
-    c = t.coordinates
-    if c is None:
-        return None
-    if c.corner is not None:
-        return c.corner
-    assert c.point is not None
-    labels = t.corners if t.corners is not None else classes(t, 1).number
-    rows = c.point[labels]
-    if c.period is None or not (c.period > 0).any():
-        return rows
-    step = rows - rows[:, :1]
-    length = np.where(c.period > 0, c.period, 1.0)
-    return rows[:, :1] + np.where(c.period > 0, step - length * np.round(step / length), step)
-
-
-def averages(rows: np.ndarray, period: np.ndarray | None) -> np.ndarray:
-    """Averages over the second last axis, (..., m, A) to (..., A); of nearest images where there is a period."""
-    if period is None or not (period > 0).any():
-        return rows.mean(axis=-2)
-    step = rows - rows[..., :1, :]
-    length = np.where(period > 0, period, 1.0)
-    step = np.where(period > 0, step - length * np.round(step / length), step)
-    return rows[..., 0, :] + step.mean(axis=-2)
+def new_labels_of(before: Triangulation, after: Triangulation) -> list:
+    """Labels (or words) of `after` that `before` does not have."""
+    if after.corners is None:
+        return []
+    old: set = set()
+    if before.corners is not None:
+        old = set(np.asarray(before.named(np.unique(before.corners))).tolist())
+    return [x for x in after.named(np.unique(after.corners)) if x not in old]

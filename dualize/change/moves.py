@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import combinations
 from typing import Any
 
 import numpy as np
@@ -10,9 +11,9 @@ import numpy as np
 from ..errors import InputError, TriangulationError
 from ..kernels import moves as kernel
 from ..triangulation import Triangulation
-from .common import Changed, label_numbers, need_labels, number, rows_with, show, simplex_number
+from .common import Changed, label_numbers, need_labels, new_label, number, rows_with, show, simplex_number
 from .state import Given, State
-from .walk import REASONS, changed, kinds_of_moves
+from .walks import REASONS, changed, kinds_of_moves
 
 __all__ = ["move", "places"]
 
@@ -74,7 +75,9 @@ def move(
     before = names.index(kind) + 1
     if at is None and simplex is None:
         if label is not None:
-            raise InputError("a label is given for a move at random", hint="name the place, or leave the label out")
+            raise InputError(
+                "a label is given for a move at random", hint="name the place, or leave the label out"
+            )
         return _random(t, before, seed)
     if at is not None and simplex is not None:
         raise InputError("a place is given twice, by labels and by a simplex number", hint="give one of them")
@@ -102,7 +105,6 @@ def places(triangulation: Triangulation, kind: str) -> list[list]:
     >>> places(t, "2-3")
     [[1, 2, 3]]
     """
-    from itertools import combinations
 
     t = triangulation
     names = kinds_of_moves(t.dimension)
@@ -145,8 +147,8 @@ def _random(t: Triangulation, before: int, seed: int) -> Changed:
 
 
 def _single(s: int, mask: int, before: int, row: np.ndarray, k: int) -> Given:
-    one = (np.array([x], dtype=np.int64) for x in (s, mask, before))
-    return Given(*one, row, np.empty(k, np.int64), np.empty(k, np.uint8), False)
+    one, two, three = (np.array([x], dtype=np.int64) for x in (s, mask, before))
+    return Given(one, two, three, row, np.empty(k, np.int64), np.empty(k, np.uint8), False)
 
 
 def _place(
@@ -174,7 +176,9 @@ def _place(
     s = simplex_number(t, simplex)
     if corners is None:
         if size != d + 1:
-            raise InputError(f"{what}: say which corners of simplex {s} are meant", hint="corners are numbered from 0")
+            raise InputError(
+                f"{what}: say which corners of simplex {s} are meant", hint="corners are numbered from 0"
+            )
         corners = range(d + 1)
     chosen = [number(c, "corner", 0, d) for c in corners]
     if len(set(chosen)) != size:
@@ -205,12 +209,12 @@ def _labelled(
     new: tuple = ()
     if before == 1:
         if label is not None:
-            new = (_new_label(t, label),)
+            new = (new_label(t, label),)
     else:
         if len(b) != before:
             raise TriangulationError(
                 f"the move {kind} cannot be made: "
-                f"the complex is no manifold there, for the simplices around have {len(b)} further corners, not {before}",
+                f"the complex is no manifold there, for {len(b)} further corners lie around, not {before}",
                 where,
             )
         if len(there := rows_with(table, b)):
@@ -229,20 +233,3 @@ def _labelled(
     if not state.given(_single(s, mask, before, np.array(row, dtype=np.int64), k)):
         raise TriangulationError(f"the move {kind} cannot be made: {REASONS[state.reason]}", where)
     return changed(state)
-
-
-def _new_label(t: Triangulation, label: int | str) -> int | str:
-    assert t.corners is not None
-    if t.corner_names is not None:
-        if str(label) in t.corner_names:
-            raise InputError(f"the label {label!r} is in use already", hint="the new point needs a new one")
-        return str(label)
-    try:
-        value = int(label)
-    except ValueError:
-        raise InputError(f"the new label {label!r} is no integer", hint="the labels here are integers") from None
-    if not -(2**63) <= value < 2**63:
-        raise InputError(f"the new label {label} is beyond 64 bits")
-    if (t.corners == value).any():
-        raise InputError(f"the label {value} is in use already", hint="the new point needs a new one")
-    return value

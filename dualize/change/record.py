@@ -141,7 +141,9 @@ class Moves:
             If it is no such document, or its tables have wrong shapes or ranges.
         """
         if not isinstance(document, dict) or document.get("format") != FORMAT:
-            raise InputError("this is no record of moves", hint="`dualize change ... --record FILE` writes one")
+            raise InputError(
+                "this is no record of moves", hint="`dualize change ... --record FILE` writes one"
+            )
         if document.get("version") != 1:
             raise InputError(f"the record has version {document.get('version')!r}, and this program reads 1")
         d = document.get("dimension")

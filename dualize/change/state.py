@@ -14,8 +14,9 @@ from ..kernels import moves as kernel
 from ..kernels.permutations import permutations_of
 from ..topology.classes import classes, corner_subsets
 from ..triangulation import Triangulation
-from .common import by_labels, fresh_words, need_labels, orientations, oriented_as, with_fields
+from .common import fresh_words, need_labels, with_fields
 from .record import Moves
+from .tables import by_labels, orientations, oriented_as
 
 __all__ = ["State"]
 
@@ -130,9 +131,7 @@ class State:
         self.state[kernel.REPLAY] = 0
         return made
 
-    def _moves(
-        self, mode: int, kinds: list[int], want: int, tries: int, places: Given | None = None
-    ) -> int:
+    def _moves(self, mode: int, kinds: list[int], want: int, tries: int, places: Given | None = None) -> int:
         state, k = self.state, self.k
         tables = permutations_of(k - 1)
         subset, starts = _subsets(k - 1)
@@ -141,10 +140,10 @@ class State:
         state[kernel.TRIES] = tries
         made = 0
         while made < want:
-            chunk = min(want - made, CHUNK)
+            # a sweep seldom makes many moves
+            chunk = min(want - made, CHUNK if mode != kernel.SWEEP else len(self) // 4 + 16)
             part = _none(k) if places is None else _slice(places, made, made + chunk, k)
-            # in a chunk that is wanted in full, a walk may also end early; the log is cut to what was made
-            out = {
+            out: dict[str, np.ndarray] = {
                 "birth": np.empty(chunk, np.int32),
                 "mask": np.empty(chunk, np.int8),
                 "kind": np.empty(chunk, np.int8),
@@ -284,7 +283,9 @@ class State:
         if self.t.coordinates is not None and self.t.coordinates.point is not None:
             first = max(first, len(self.t.coordinates.point))
         if first + new >= 2**63:
-            raise LimitError("no 64-bit label is left behind the largest one", hint="relabel the complex first")
+            raise LimitError(
+                "no 64-bit label is left behind the largest one", hint="relabel the complex first"
+            )
         return self.names + list(range(first, first + new))
 
     # -- the way back ------------------------------------------------------------------------------
@@ -320,7 +321,7 @@ class State:
         return np.sort(self.birth[: len(self)]).astype(np.int64)
 
     def triangulation(self) -> Triangulation:
-        """The triangulation as it is now: simplices by their number, so what did not change keeps its order."""
+        """The triangulation as it is now; simplices by their number, so what stayed keeps its order."""
         n, k = len(self), self.k
         order = np.argsort(self.birth[:n])
         row_of = np.empty(n, dtype=np.int64)
@@ -366,7 +367,7 @@ def _bits() -> np.ndarray:
 
 @cache
 def _subsets(dimension: int) -> tuple[np.ndarray, np.ndarray]:
-    """The subsets of the corners that a move of each kind can replace, as bits, and where each kind begins."""
+    """The subsets of corners that each kind of move can replace, as bits, and where each kind begins."""
     rows: list[int] = []
     starts = [0, 0]
     for kind in range(1, dimension + 2):

@@ -3,9 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from functools import cache
-from itertools import permutations, product
-from typing import Any, NamedTuple
+from typing import Any
 
 import numpy as np
 
@@ -13,27 +11,28 @@ from ..errors import InputError
 from ..kernels.permutations import permutations_of
 from ..topology.classes import classes, corner_subsets
 from ..triangulation import Coordinates, Triangulation
+from .charts import averages, charts
 from .common import (
     Changed,
     as_written,
     as_written_chart,
-    averages,
-    by_labels,
-    charts,
     check_room,
     fresh_labels,
     fresh_words,
     label_numbers,
     labelled,
-    labels_name_simplices,
     need_labels,
+    new_label,
+    new_labels_of,
     number,
     rows_with,
     show,
+    with_fields,
 )
+from .tables import by_labels, labels_name_simplices, new_positions
+from .templates import Template, barycentric, edgewise, glued_pieces
 
 __all__ = ["derived", "refine", "stellar"]
-
 
 # -- one new point ---------------------------------------------------------------------------------
 
@@ -67,15 +66,14 @@ def stellar(triangulation: Triangulation, at: Sequence[Any], *, label: int | str
     star = rows_with(corners, a)
     if not len(star):
         raise InputError("these labels are no simplex of the complex", show(t, a))
-    from .moves import _new_label
 
     words = None if t.corner_names is None else list(t.corner_names)
     if words is not None:
         new = len(words)
-        words.append(fresh_words(words, 1)[0] if label is None else str(_new_label(t, label)))
+        words.append(fresh_words(words, 1)[0] if label is None else str(new_label(t, label)))
         name: int | str = words[-1]
     else:
-        new = int(fresh_labels(t, 1)[0]) if label is None else int(_new_label(t, label))
+        new = int(fresh_labels(t, 1)[0]) if label is None else int(new_label(t, label))
         name = new
     rows = as_written(t)
     inside = np.zeros(len(t), dtype=bool)
@@ -123,24 +121,6 @@ def _with_point(
 
 
 # -- subdivisions by a template --------------------------------------------------------------------
-
-
-class Template(NamedTuple):
-    """How every simplex is cut, the same way for all.
-
-    Attributes
-    ----------
-    weight : ndarray of int64, shape (P, K)
-        The points of the pieces as barycentric coordinates, which add up to one number.
-    piece : ndarray of int64, shape (Q, K)
-        The points of each piece.
-    sign : ndarray of int8, shape (Q,)
-        Orientation of the piece in the simplex.
-    """
-
-    weight: np.ndarray
-    piece: np.ndarray
-    sign: np.ndarray
 
 
 def derived(triangulation: Triangulation, times: int = 1) -> Changed:
@@ -228,8 +208,8 @@ def refine(triangulation: Triangulation, factor: int) -> Changed:
             f"simplex {s}, slot {i}",
             "subdivide barycentrically first (derived 1): its gluings all do",
         )
-    template = _edgewise(d, factor)
-    across, rank = _glued(t, template)
+    template = edgewise(d, factor)
+    across, rank = glued_pieces(t, template)
     result = _finish(t, template, across, rank)
     return Changed(result.triangulation, result.refined_from, _new_names(t, result.triangulation))
 
@@ -250,91 +230,7 @@ def _derived(t: Triangulation) -> Changed:
     turned = tables.compose[t.rank[:, last], np.arange(q)]
     across[:, :, -1] = np.where(there >= 0, there * q + turned, -1)
     rank = np.zeros((n * q, k), dtype=np.uint8)
-    return _finish(t, _barycentric(k - 1), across.reshape(-1, k), rank)
-
-
-@cache
-def _barycentric(d: int) -> Template:
-    k = d + 1
-    tables = permutations_of(d)
-    scale = int(np.lcm.reduce(np.arange(1, k + 1)))
-    subsets = [tuple(c) for m in range(1, k + 1) for c in corner_subsets(d, m).tolist()]
-    index = {c: p for p, c in enumerate(subsets)}
-    weight = np.zeros((len(subsets), k), dtype=np.int64)
-    for p, c in enumerate(subsets):
-        weight[p, list(c)] = scale // len(c)
-    piece = [[index[tuple(sorted(row[: i + 1]))] for i in range(k)] for row in tables.image.tolist()]
-    return Template(weight, np.array(piece), tables.sign)
-
-
-@cache
-def _edgewise(d: int, r: int) -> Template:
-    """Path simplices of the grid within r >= x_1 >= ... >= x_d >= 0; corner c of the simplex is x = (r^c, 0...)."""
-    index: dict[tuple[int, ...], int] = {}
-    pieces = []
-    for cube in product(range(r), repeat=d):
-        if any(a < b for a, b in zip(cube, cube[1:], strict=False)):
-            continue
-        for order in permutations(range(d)):
-            point = list(cube)
-            path = [tuple(point)]
-            for axis in order:
-                point[axis] += 1
-                path.append(tuple(point))
-            if all(a >= b for x in path for a, b in zip(x, x[1:], strict=False)):
-                pieces.append([index.setdefault(x, len(index)) for x in path])
-    x = np.array(list(index))
-    stairs = np.concatenate([np.full((len(x), 1), r), x, np.zeros((len(x), 1), dtype=np.int64)], axis=1)
-    weight = stairs[:, :-1] - stairs[:, 1:]
-    piece = np.array(pieces)
-    sign = np.round(np.linalg.det(weight[piece].astype(float) / r) * r**d).astype(np.int8)
-    return Template(weight, piece, sign)
-
-
-def _glued(t: Triangulation, template: Template) -> tuple[np.ndarray, np.ndarray]:
-    """The gluing table of the pieces, for gluings that keep the order of the corners."""
-    n, k = t.across.shape
-    tables = permutations_of(k - 1)
-    weight, piece, _ = template
-    q = len(piece)
-    facets: dict[frozenset, list[tuple[int, int]]] = {}
-    for a, row in enumerate(piece.tolist()):
-        for slot in range(k):
-            facets.setdefault(frozenset(row[:slot] + row[slot + 1 :]), []).append((a, slot))
-    across = np.full((n, q, k), -1, dtype=np.int64)
-    rank = np.zeros((n, q, k), dtype=np.uint8)
-    # facets of pieces on each facet of the simplex, by the weights of the other corners
-    outer: list[dict[frozenset, tuple[int, int]]] = [{} for _ in range(k)]
-
-    def images(row: Sequence, slot: int, other: Sequence, there: int) -> list[int]:
-        return [there if c == slot else other.index(x) for c, x in enumerate(row)]
-
-    base = np.arange(n) * q
-    for points, where in facets.items():
-        if len(where) == 2:
-            (a, i), (b, j) = where
-            one, two = piece[a].tolist(), piece[b].tolist()
-            for (a_, i_, row), (b_, j_, other) in (((a, i, one), (b, j, two)), ((b, j, two), (a, i, one))):
-                across[:, a_, i_] = base + b_
-                rank[:, a_, i_] = tables.rank(np.array(images(row, i_, other, j_)))
-        else:
-            on = next(c for c in range(k) if all(weight[p, c] == 0 for p in points))
-            key = frozenset(tuple(np.delete(weight[p], on).tolist()) for p in points)
-            outer[on][key] = where[0]
-    for i in range(k):
-        for j in range(k):
-            there = tables.image[t.rank[:, i], i]
-            rows = np.flatnonzero((t.across[:, i] >= 0) & (there == j))
-            if not len(rows):
-                continue
-            for key, (a, slot) in outer[i].items():
-                b, slot_there = outer[j][key]
-                one = [tuple(np.delete(weight[p], i).tolist()) for p in piece[a]]
-                two = [tuple(np.delete(weight[p], j).tolist()) for p in piece[b]]
-                one[slot] = two[slot_there] = ()
-                across[rows, a, slot] = t.across[rows, i].astype(np.int64) * q + b
-                rank[rows, a, slot] = tables.rank(np.array(images(one, slot, two, slot_there)))
-    return across.reshape(-1, k), rank.reshape(-1, k)
+    return _finish(t, barycentric(k - 1), across.reshape(-1, k), rank)
 
 
 def _finish(t: Triangulation, template: Template, across: np.ndarray, rank: np.ndarray) -> Changed:
@@ -375,16 +271,7 @@ def _finish(t: Triangulation, template: Template, across: np.ndarray, rank: np.n
     return Changed(plain, refined_from)
 
 
-def new_positions(labels: np.ndarray, words: Sequence[str]) -> np.ndarray:
-    """Labels as the positions that their words have in order."""
-    order = sorted(range(len(words)), key=words.__getitem__)
-    position = np.empty(len(words), dtype=np.int64)
-    position[order] = np.arange(len(order))
-    return position[labels]
-
-
 def _with(t: Triangulation, coordinates: Coordinates) -> Triangulation:
-    from .common import with_fields
 
     return with_fields(t, coordinates=coordinates)
 
@@ -433,6 +320,5 @@ def _points(t: Triangulation, weight: np.ndarray) -> tuple[np.ndarray, list[str]
 
 
 def _new_names(before: Triangulation, after: Triangulation) -> list:
-    from .walk import new_labels_of
 
     return new_labels_of(before, after)

@@ -4,10 +4,10 @@ The complex lies in slots ``0 .. n - 1`` without holes: the gluing table `across
 complexes the points `corner`, and for every slot its `birth` (the number of the simplex: the input's are
 ``0 .. N - 1``, every new one gets the next) and its `orientation`; `slot_of` leads from a birth to its slot.
 
-A move takes a simplex A whose star is A * (boundary of B), ``|A| + |B| = D + 2``, and puts (boundary of A) * B
-in its place: `kind` = |B| simplices go and |A| come.  Inside a move the points have *names*: 0 .. D are the
-corners of the simplex from which A was seen, D + 1 is the one point more.  The old simplices are called by
-the name in B they lack, the new ones by the name in A they lack.
+A move takes a simplex A whose star is A * (boundary of B), ``|A| + |B| = D + 2``, and puts
+(boundary of A) * B in its place: `kind` = |B| simplices go and |A| come.  Inside a move the points have
+*names*: 0 .. D are the corners of the simplex from which A was seen, D + 1 is the one point more.  The old
+simplices are called by the name in B they lack, the new ones by the name in A they lack.
 
 In a labelled complex B must not be there already.  All simplices of 2 to D points are kept in a hash table
 with linear probing: a simplex of points x < y < z < w is the two words (x + 1, y + 1), (z + 1, w + 1).

@@ -8,10 +8,10 @@ import numpy as np
 
 from ..errors import InputError, TriangulationError
 from ..kernels import moves as kernel
-from ..kernels.moves import average_points
-from ..kernels.permutations import permutations_of
-from ..triangulation import Coordinates, Triangulation
-from .common import Changed, number, with_fields
+from ..triangulation import Triangulation
+from .charts import moved_coordinates, rows_in_order
+from .common import Changed, new_labels_of, number, with_fields
+from .given import backward, forward
 from .record import Moves
 from .state import Given, State
 
@@ -139,7 +139,7 @@ def replay(triangulation: Triangulation, moves: Moves) -> Changed:
     """
     _check(triangulation, moves, len(moves.written))
     state = State(triangulation, work=len(moves), labels=_names(moves))
-    return _given(state, moves, _forward(state, moves))
+    return _given(state, moves, forward(state, moves))
 
 
 def undo(triangulation: Triangulation, moves: Moves, count: int | None = None) -> Changed:
@@ -156,7 +156,7 @@ def undo(triangulation: Triangulation, moves: Moves, count: int | None = None) -
     count = len(moves) if count is None else number(count, "count", 0, len(moves))
     _check(triangulation, moves, len(moves.alive()))
     state = State(triangulation, work=count, past=moves, labels=_names(moves))
-    result = _given(state, moves, _backward(state, moves, count))
+    result = _given(state, moves, backward(state, moves, count))
     t = result.triangulation
     if count == len(moves):
         t = with_fields(t, coordinates=moves.coordinates)
@@ -172,7 +172,7 @@ def changed(state: State) -> Changed:
     coordinates, notes = moved_coordinates(t, moves)
     result = state.triangulation()
     if coordinates is not None:
-        result = with_fields(result, coordinates=_used_rows(result, moves, coordinates))
+        result = with_fields(result, coordinates=rows_in_order(result, moves, coordinates))
     births = state.births()
     return Changed(
         result,
@@ -183,77 +183,7 @@ def changed(state: State) -> Changed:
     )
 
 
-def new_labels_of(before: Triangulation, after: Triangulation) -> list:
-    """Labels (or words) of `after` that `before` does not have."""
-    if after.corners is None:
-        return []
-    old: set = set()
-    if before.corners is not None:
-        old = set(np.asarray(before.named(np.unique(before.corners))).tolist())
-    return [x for x in after.named(np.unique(after.corners)) if x not in old]
-
-
 # -- coordinates -----------------------------------------------------------------------------------
-
-
-def moved_coordinates(t: Triangulation, moves: Moves) -> tuple[Coordinates | None, tuple[str, ...]]:
-    """Coordinates after moves: rows by label (by word of the record), new points at barycentres."""
-    if t.coordinates is None:
-        return None, ()
-    if moves.labels is None:
-        return None, ("coordinates dropped: a gluing table has one chart for each simplex",)
-    chart = one_chart(t)
-    if chart is None:
-        return None, ("coordinates dropped: the charts of the simplices do not fit together to one",)
-    assert chart.point is not None
-    point, period = chart.point, chart.period
-    births = moves.labels[moves.kind == 1]
-    if len(births):
-        rows = np.zeros((max(len(point), int(births.max()) + 1), point.shape[1]))
-        rows[: len(point)] = point
-        wrap = np.zeros(point.shape[1]) if period is None else period
-        flat = rows.ravel()
-        from ..kernels import engine
-
-        arguments = (births[:, :-1].ravel(), births[:, -1].copy(), flat, wrap, tuple(range(births.shape[1] - 1)))
-        engine(len(births))(average_points, *arguments, len(births))
-        point = flat.reshape(rows.shape)
-    note = ("coordinates kept: moves are combinatorial, so simplices may overlap or be flat",)
-    return Coordinates(point=point, period=period), note
-
-
-def one_chart(t: Triangulation) -> Coordinates | None:
-    """One chart for all labels, where the charts of the simplices agree up to periods; None where not."""
-    c = t.coordinates
-    if c is None or t.corners is None or c.point is not None:
-        return c
-    assert c.corner is not None
-    flat = t.corners.ravel()
-    if flat.min() < 0 or flat.max() >= 4 * len(flat):
-        return None
-    rows = c.corner.reshape(len(flat), -1)
-    used, first = np.unique(flat, return_index=True)
-    point = np.zeros((int(flat.max()) + 1, rows.shape[1]))
-    point[used] = rows[first]
-    step = rows - point[flat]
-    wide = c.corner.max(axis=1) - c.corner.min(axis=1)
-    if c.period is not None:
-        length = np.where(c.period > 0, c.period, 1.0)
-        step = np.where(c.period > 0, step - length * np.round(step / length), step)
-        if (np.where(c.period > 0, wide / length, 0.0) >= 0.5).any():
-            return None  # the nearest image of a corner is not the one meant
-    if np.abs(step).max() > 1e-9 * max(1.0, float(np.abs(rows).max())):
-        return None
-    return Coordinates(point=point, period=c.period)
-
-
-def _used_rows(t: Triangulation, moves: Moves, coordinates: Coordinates) -> Coordinates:
-    """Rows in the order of the words of `t`; by label where labels are numbers."""
-    if t.corner_names is None or moves.words is None:
-        return coordinates
-    assert coordinates.point is not None
-    row = {word: x for x, word in enumerate(moves.words)}
-    return coordinates._replace(point=coordinates.point[[row[word] for word in t.corner_names]])
 
 
 def _renamed(t: Triangulation, names: tuple[str, ...]) -> Triangulation:
@@ -274,7 +204,9 @@ def _kinds(dimension: int, kinds: Sequence[str] | None) -> list[int]:
     chosen = names if kinds is None else list(kinds)
     for kind in chosen:
         if kind not in names:
-            raise InputError(f"there is no move {kind!r} in dimension {dimension}", hint=f"moves: {', '.join(names)}")
+            raise InputError(
+                f"there is no move {kind!r} in dimension {dimension}", hint=f"moves: {', '.join(names)}"
+            )
     if not chosen:
         raise InputError("a walk needs at least one kind of move", hint=f"moves: {', '.join(names)}")
     return [names.index(kind) + 1 for kind in chosen]
@@ -302,82 +234,6 @@ def _names(moves: Moves) -> tuple:
     return tuple(np.unique(moves.labels).tolist())
 
 
-def _points(state: State, moves: Moves) -> np.ndarray:
-    """The labels of a record as points of a state."""
-    assert moves.labels is not None
-    number_of = state.point_numbers()
-    if moves.words is not None:
-        table = np.array([number_of[w] for w in moves.words], dtype=np.int64)
-        return table[moves.labels]
-    labels, inverse = np.unique(moves.labels, return_inverse=True)
-    table = np.array([number_of[x] for x in labels.tolist()], dtype=np.int64)
-    return table[inverse.reshape(moves.labels.shape)] if len(labels) else moves.labels
-
-
-def _forward(state: State, moves: Moves) -> Given:
-    k = moves.dimension + 1
-    row = np.empty(0, np.int64) if moves.labels is None else _points(state, moves).ravel()
-    return Given(
-        moves.simplex,
-        moves.corners.astype(np.int64),
-        moves.kind.astype(np.int64),
-        row,
-        np.empty(len(moves) * k, np.int64),
-        np.empty(len(moves) * k, np.uint8),
-        False,
-    )
-
-
-def _backward(state: State, moves: Moves, count: int) -> Given:
-    """The inverse moves, last first, with the numbers and corner orders that the simplices had."""
-    d, m = moves.dimension, len(moves)
-    k, v = d + 1, d + 2
-    back = slice(m - count, m)
-    birth = moves.first_born()[:-1][back][::-1].copy()
-    kind = (v - moves.kind.astype(np.int64))[back][::-1].copy()
-    new = moves.removed[back][::-1].copy()
-    if moves.labels is not None:
-        points = _points(state, moves)[back][::-1]
-        # B first, then A: the place of A among the columns depends on the kind
-        turn = (np.arange(v) + kind[:, None]) % v
-        row = np.take_along_axis(points, turn, axis=1).ravel()
-        mask = np.zeros(count, dtype=np.int64)
-        layout = np.zeros((count, k), dtype=np.uint8)
-        return Given(birth, mask, kind, row, new.ravel(), layout.ravel(), True)
-    masks, layouts = [], []
-    known: dict[tuple[int, int, bytes], tuple[int, list[int]]] = {}
-    rows = zip(moves.kind[back], moves.corners[back], moves.layout[back], strict=True)
-    for forward, corners, order in rows:
-        key = (int(forward), int(corners), order.tobytes())
-        if key not in known:
-            known[key] = _inverse(d, int(forward), int(corners), order.tolist())
-        masks.append(known[key][0])
-        layouts.append(known[key][1])
-    mask = np.array(masks[::-1], dtype=np.int64)
-    layout = np.array(layouts[::-1], dtype=np.uint8).reshape(count, k)
-    return Given(birth, mask, kind, np.empty(0, np.int64), new.ravel(), layout.ravel(), True)
-
-
-def _inverse(d: int, kind: int, corners: int, order: list[int]) -> tuple[int, list[int]]:
-    """Where the inverse of a move takes place, seen from its first new simplex, and the layouts it must make."""
-    k, v = d + 1, d + 2
-    tables = permutations_of(d)
-    ball = [x for x in range(v) if not corners >> x & 1]  # names in B
-    seen_from = next(a for a in range(k) if corners >> a & 1)
-    corner_of = {y: y - (y > seen_from) for y in range(v) if y != seen_from} | {seen_from: k}
-    mask = sum(1 << corner_of[x] for x in ball)
-    layouts = [0] * k
-    for x, rank in zip(ball, order, strict=False):
-        image = tables.image[rank].tolist()
-        images = [0] * k
-        for y in range(v):
-            if y != x:
-                mine, omitted = corner_of[y], corner_of[x]
-                images[mine - (mine > omitted)] = image[y - (y > x)]
-        layouts[sorted(ball, key=corner_of.__getitem__).index(x)] = int(tables.rank(np.array(images)))
-    return mask, layouts
-
-
 def _given(state: State, moves: Moves, places: Given) -> Changed:
     made = state.given(places)
     if made < len(places.kind):
@@ -392,6 +248,6 @@ REASONS = {
     kernel.BOUNDARY: "the simplex to replace is on the boundary",
     kernel.DEGREE: "the simplices around the one to replace are not as many as the move needs",
     kernel.EXISTS: "the new simplex exists already",
-    kernel.PINCHED: "the simplices around the one to replace are in several pieces, so it is no manifold there",
+    kernel.PINCHED: "the simplices around the one to replace are in several pieces: no manifold",
     kernel.UNKNOWN: "it names a simplex that is not there",
 }

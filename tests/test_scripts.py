@@ -6,6 +6,7 @@ import re
 import shutil
 import subprocess
 import sys
+import tomllib
 
 import pytest
 from commandline import BIN, ROOT, environment
@@ -21,6 +22,20 @@ def test_shell_scripts_parse(name):
 @pytest.mark.parametrize("name", ["scripts/quickstart", "scripts/test", ".ci/run", "scripts/bench"])
 def test_scripts_are_executable(name):
     assert os.access(ROOT / name, os.X_OK)
+
+
+def test_every_data_file_is_packed_into_an_installed_package():
+    # setuptools packs what matches relative to the innermost package
+    settings = tomllib.loads((ROOT / "pyproject.toml").read_text())["tool"]["setuptools"]["package-data"]
+    package = ROOT / "dualize"
+    hidden = ("__pycache__", ".mypy_cache")
+    for path in package.rglob("*"):
+        if path.is_dir() or path.suffix == ".py" or any(part in hidden for part in path.parts):
+            continue
+        home = next(folder for folder in path.parents if (folder / "__init__.py").exists())
+        name = ".".join(home.relative_to(ROOT).parts)
+        patterns = [*settings.get("*", []), *settings.get(name, [])]
+        assert any(path.relative_to(home).match(pattern) for pattern in patterns), path
 
 
 @pytest.fixture

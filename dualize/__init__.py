@@ -22,7 +22,7 @@ from .build import build
 from .export import export
 
 if TYPE_CHECKING:
-    from . import make
+    from . import change, make
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
     from .export import read_export
     from .formats import load, read
@@ -47,7 +47,7 @@ _HOMES = {
 }
 
 # rooms that are used under their own names, imported on first use
-_ROOMS = ("make",)
+_ROOMS = ("change", "make")
 
 __all__ = [
     "Coordinates",
@@ -60,6 +60,7 @@ __all__ = [
     "TriangulationError",
     "__version__",
     "build",
+    "change",
     "export",
     "load",
     "make",

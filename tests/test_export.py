@@ -352,14 +352,15 @@ def test_vtk_holds_numbers_and_orientations(tmp_path):
 
 
 def test_periodic_charts_stay_whole(tmp_path):
-    """No line of a periodic grid is longer than half the diagonal of a cube."""
+    """No line of a periodic grid is longer than that of a path simplex: sqrt(7/8) from its first corner to its
+    centre, and a third of that from there to the facet."""
     points = np.stack(np.meshgrid(*[np.arange(3)] * 3, indexing="ij"), -1).reshape(-1, 3).astype(float)
     where = Coordinates(point=points, period=np.full(3, 3.0))
     t = Triangulation.from_facets(sp.kuhn_grid((3, 3, 3), periodic=True), coordinates=where)
     export(build(t), tmp_path / "mesh.vtk", "vtk")
     mesh = meshio.read(tmp_path / "mesh.vtk")
     ends = mesh.points[mesh.cells_dict["line"]]
-    assert np.linalg.norm(ends[:, 1] - ends[:, 0], axis=1).max() < np.sqrt(3) / 2
+    assert np.linalg.norm(ends[:, 1] - ends[:, 0], axis=1).max() == pytest.approx(np.sqrt(7 / 8) / 3)
 
 
 def test_charts_of_a_gluing_table_are_drawn_as_given(tmp_path):

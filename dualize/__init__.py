@@ -4,6 +4,7 @@
 
     t = dualize.read("region.txt")      # Triangulation: a gluing table
     s = dualize.build(t)                # Skeleton: the oriented dual two-complex with its boundary graph
+    report = dualize.audit(s)           # Report: can this be trusted, and what space is it?
     s.write("region.h5")
     s = dualize.load("region.h5")
 
@@ -18,14 +19,18 @@ from typing import TYPE_CHECKING, Any
 
 # A function that bears its module's name is imported at once: were it left to `__getattr__`, importing the
 # module first (`import dualize.build`) would bind the name to the module.
+from .audit import audit
 from .build import build
 from .export import export
+from .match import match
 
 if TYPE_CHECKING:
     from . import change, make
+    from .audit import Finding, Report
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
     from .export import read_export
     from .formats import load, read
+    from .match import Match
     from .skeleton import Skeleton
     from .triangulation import Coordinates, Triangulation
 
@@ -35,8 +40,11 @@ __version__ = "0.1.0"
 _HOMES = {
     "Coordinates": "triangulation",
     "DualizeError": "errors",
+    "Finding": "audit",
     "InputError": "errors",
     "LimitError": "errors",
+    "Match": "match",
+    "Report": "audit",
     "Skeleton": "skeleton",
     "SkeletonError": "errors",
     "Triangulation": "triangulation",
@@ -52,18 +60,23 @@ _ROOMS = ("change", "make")
 __all__ = [
     "Coordinates",
     "DualizeError",
+    "Finding",
     "InputError",
     "LimitError",
+    "Match",
+    "Report",
     "Skeleton",
     "SkeletonError",
     "Triangulation",
     "TriangulationError",
     "__version__",
+    "audit",
     "build",
     "change",
     "export",
     "load",
     "make",
+    "match",
     "read",
     "read_export",
 ]

@@ -8,7 +8,7 @@ import numpy as np
 
 from ..errors import InputError
 from ..triangulation import Triangulation
-from .parts import Complex, as_written, check_room, labelled, named, orientations, signed, table
+from .parts import Complex, check_room, labelled, named, orientations, signed, table
 
 __all__ = ["cone", "connected_sum", "join", "suspension"]
 
@@ -56,18 +56,17 @@ def _tips(base: Complex, tips: int) -> Triangulation:
         if base.corners is None or not base.matched:
             return _tips_of_table(base, tips)
     part = labelled(base)
-    new = part.facets.max() + 1 + np.arange(tips)
-    below = as_written(base, part.facets)
-    # row by row: a simplex with the first tip, then (swapped, so that both are positive) with the second
-    facets = np.empty((len(below), tips, below.shape[1] + 1), dtype=np.int64)
-    facets[:, :, :-1] = below[:, None]
-    facets[:, :, -1] = new
-    facets[:, 1:, :2] = below[:, None, 1::-1]
+    k = part.facets.shape[1]
+    # row by row: a simplex with the first tip, then, of opposite sign, with the second
+    facets = np.empty((len(part.facets), tips, k + 1), dtype=np.int64)
+    facets[:, :, :-1] = part.facets[:, None]
+    facets[:, :, -1] = part.facets.max() + 1 + np.arange(tips)
+    signs = part.written[:, None] * np.array([1, -1])[:tips]
     word = None
     if part.names is not None:
         words = [*part.names, *(["tip"] if tips == 1 else ["tip.0", "tip.1"])]
         word = words.__getitem__
-    return named(facets.reshape(-1, below.shape[1] + 1), word)
+    return named(signed(facets.reshape(-1, k + 1), signs.ravel()), word)
 
 
 def _tips_of_table(base: Triangulation, tips: int) -> Triangulation:
@@ -81,7 +80,8 @@ def _tips_of_table(base: Triangulation, tips: int) -> Triangulation:
     image[..., k, :] = np.arange(k + 1)
     if tips == 2:
         across[0, :, k], across[1, :, k] = n + np.arange(n), np.arange(n)
-    return table(across.reshape(-1, k + 1), image.reshape(-1, k + 1, k + 1))
+    written = np.array([[1], [-1]])[:tips] * base.written
+    return table(across.reshape(-1, k + 1), image.reshape(-1, k + 1, k + 1), written.ravel())
 
 
 def join(first: Complex, second: Complex) -> Triangulation:
@@ -100,9 +100,10 @@ def join(first: Complex, second: Complex) -> Triangulation:
     fits(dimension, "join", "a join has one dimension more than both together")
     check_room(len(a.facets) * len(b.facets), dimension)
     shift = a.stride - min(int(b.facets.min()), 0)
-    left = np.repeat(as_written(first, a.facets), len(b.facets), axis=0)
-    right = np.tile(as_written(second, b.facets) + shift, (len(a.facets), 1))
-    return named(np.hstack([left, right]), _two_names(a.names, b.names, shift))
+    left = np.repeat(a.facets, len(b.facets), axis=0)
+    right = np.tile(b.facets + shift, (len(a.facets), 1))
+    signs = np.outer(a.written, b.written).ravel()
+    return named(signed(np.hstack([left, right]), signs), _two_names(a.names, b.names, shift))
 
 
 def fits(dimension: int, what: str, hint: str) -> None:

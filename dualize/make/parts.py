@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable, Sequence
+from itertools import combinations
 from typing import NamedTuple
 
 import numpy as np
@@ -110,9 +111,13 @@ def check_room(simplices: int, dimension: int, axes: int = 0) -> None:
 
 
 class Labelled(NamedTuple):
-    """A complex as lists of labels, its words, its coordinates (charts in the order of `facets`)."""
+    """A complex as lists of labels, ascending in each row; charts of coordinates follow them.
+
+    `written` holds the sign with which each row was written.
+    """
 
     facets: np.ndarray
+    written: np.ndarray
     names: tuple[str, ...] | None
     coordinates: Coordinates | None
 
@@ -123,38 +128,32 @@ class Labelled(NamedTuple):
 
 
 def labelled(complex_: Complex | Sequence[Sequence[int]], name: str = "the complex") -> Labelled:
-    """The lists of labels of a complex, or the error that it has none.
-
-    The labels of a row ascend; a chart follows them.  Rows keep the sign with which they were written only in
-    `Triangulation.written`; see `as_written`.
-    """
+    """The lists of labels of a complex, or the error that it has none."""
     if isinstance(complex_, Triangulation):
         if complex_.corners is None or not complex_.matched:
             raise InputError(
                 f"{name} is a gluing table and not a labelled simplicial complex",
                 hint="this recipe tells the corners apart by their labels; subdivide the gluing table first",
             )
-        return Labelled(complex_.corners, complex_.corner_names, complex_.coordinates)
+        return Labelled(complex_.corners, complex_.written, complex_.corner_names, complex_.coordinates)
     facets = np.asarray(complex_)
     if facets.ndim != 2 or 0 in facets.shape or facets.dtype.kind not in "iu":
         raise InputError(f"{name} is no table of integer labels, shape (simplices, labels of each)")
+    pairs = list(combinations(range(facets.shape[1]), 2))
+    swaps = sum((facets[:, i] > facets[:, j] for i, j in pairs), np.zeros(len(facets), dtype=np.int64))
     facets = np.sort(facets.astype(np.int64), axis=1)
     if (twice := (facets[:, 1:] == facets[:, :-1]).any(axis=1)).any():
         s = int(np.flatnonzero(twice)[0])
         raise InputError(f"{name} repeats a label in a simplex", f"simplex {s}: {facets[s].tolist()}")
-    return Labelled(facets, None, None)
+    return Labelled(facets, 1 - 2 * (swaps % 2), None, None)
 
 
-def as_written(complex_: Complex, facets: np.ndarray) -> np.ndarray:
-    """A copy of the ascending `facets` of a complex, each with the sign with which it was written."""
-    return signed(facets, complex_.written) if isinstance(complex_, Triangulation) else facets.copy()
-
-
-def signed(facets: np.ndarray, signs: np.ndarray) -> np.ndarray:
-    """A copy of `facets` in which the first two labels are exchanged where the sign is negative."""
-    out = facets.copy()
+def signed(rows: np.ndarray, signs: np.ndarray) -> np.ndarray:
+    """A copy of `rows`, shape (N, K, ...), the first two entries exchanged where the sign is -1."""
+    out = rows.copy()
     swap = np.flatnonzero(signs < 0)
-    out[swap, 0], out[swap, 1] = facets[swap, 1], facets[swap, 0]
+    if rows.shape[1] > 1:
+        out[swap, 0], out[swap, 1] = rows[swap, 1], rows[swap, 0]
     return out
 
 
@@ -192,15 +191,16 @@ def orientations(t: Triangulation) -> np.ndarray:
     return out
 
 
-def table(across: np.ndarray, images: np.ndarray) -> Triangulation:
+def table(across: np.ndarray, images: np.ndarray, written: np.ndarray | None = None) -> Triangulation:
     """A gluing table from its carrying permutations, for tables that are right by construction.
 
-    `images` is (N, K, K); rows of boundary slots are not read.
+    `images` is (N, K, K); rows of boundary slots are not read.  `written` are signs, +1 by default.
     """
     n, k = across.shape
     inner = across >= 0
     rank = permutations_of(k - 1).rank(np.where(inner[:, :, None], images, np.arange(k)))
-    return Triangulation(across=_ids(across), rank=rank, written=np.ones(n, dtype=np.int8))
+    signs = np.ones(n, dtype=np.int8) if written is None else written.astype(np.int8)
+    return Triangulation(across=_ids(across), rank=rank, written=signs)
 
 
 def coloured(across: np.ndarray) -> Triangulation:

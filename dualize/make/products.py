@@ -16,7 +16,7 @@ from ..errors import InputError
 from ..kernels.permutations import permutations_of
 from ..triangulation import Coordinates, Triangulation
 from .joins import fits
-from .parts import Complex, Labelled, at_least, check_room, labelled, named, table
+from .parts import Complex, Labelled, at_least, check_room, labelled, named, signed, table
 
 __all__ = ["mapping_torus", "product", "slab"]
 
@@ -59,6 +59,10 @@ def product(first: Complex, second: Complex) -> Triangulation:
     left = a.facets[:, stairs[:, :, 0]][:, None]
     right = b.facets[:, stairs[:, :, 1]][None]
     facets = (left * stride + right).reshape(-1, d + e + 1)
+    # a staircase is positive when its steps along the second factor can be brought behind the others evenly
+    parity = [sum(step - place for place, step in enumerate(ups)) for ups in combinations(range(d + e), e)]
+    turns = (-1) ** (d * e - np.array(parity))
+    signs = a.written[:, None, None] * b.written[:, None] * turns
     word = None
     if a.names is not None or b.names is not None:
         one, two = (p.names or [str(x) for x in range(p.stride)] for p in (a, b))
@@ -71,7 +75,7 @@ def product(first: Complex, second: Complex) -> Triangulation:
     if x is not None and y is not None:
         x, y = x[: a.stride], y[:stride]
         coordinates = Coordinates(np.hstack([np.repeat(x, stride, axis=0), np.tile(y, (len(x), 1))]))
-    return named(facets, word, coordinates)
+    return named(signed(facets, signs.ravel()), word, coordinates)
 
 
 def _stair(d: int, e: int, ups: tuple[int, ...]) -> list[tuple[int, int]]:
@@ -101,7 +105,9 @@ def slab(base: Complex, layers: int = 1) -> Triangulation:
     Triangulation
         In a labelled slab the corner x of level l = 0 .. layers has the label ``x + l * n``, n one more than
         the largest label of `base` (the word ``x``, above the bottom ``x.l``): both ends have the labels of
-        the base, up to that shift.  Coordinates, where the base has some, get the level as one more axis.
+        the base, up to that shift.  The level is the first axis of the orientation, so that the top has the
+        orientation of the base as written, and the bottom the opposite one.  Coordinates, where the base has
+        some, get the level as one more axis, the last.
 
     Raises
     ------
@@ -124,6 +130,7 @@ def slab(base: Complex, layers: int = 1) -> Triangulation:
     fits(k, "slab", "the base has one dimension less than the slab")
     check_room(len(part.facets) * k * layers, k)
     corner, level = _prism(k)
+    signs = _prism_signs(part.written, k, layers)
     n = part.stride
     bottom = part.facets[:, corner] + level * n
     facets = bottom[None] + (n * np.arange(layers))[:, None, None, None]
@@ -133,7 +140,10 @@ def slab(base: Complex, layers: int = 1) -> Triangulation:
         def word(x: int) -> str:
             return names[x % n] + (f".{x // n}" if x >= n else "")
 
-    return named(facets.reshape(-1, k + 1), word, _raised(part, layers))
+    coordinates = _raised(part, layers)
+    if coordinates is not None and coordinates.corner is not None:
+        coordinates = coordinates._replace(corner=signed(coordinates.corner, signs))
+    return named(signed(facets.reshape(-1, k + 1), signs), word, coordinates)
 
 
 def _prism(k: int) -> tuple[np.ndarray, np.ndarray]:
@@ -141,6 +151,11 @@ def _prism(k: int) -> tuple[np.ndarray, np.ndarray]:
     corner = np.array([[*range(j + 1), *range(j, k)] for j in range(k)])
     level = np.array([[0] * (j + 1) + [1] * (k - j) for j in range(k)])
     return corner, level
+
+
+def _prism_signs(written: np.ndarray, k: int, layers: int) -> np.ndarray:
+    """Signs of the ascending simplices of a slab, of which the level is the first axis."""
+    return np.tile(np.outer(written, (-1) ** np.arange(k)).ravel(), layers)
 
 
 def _raised(part: Labelled, layers: int) -> Coordinates | None:
@@ -203,7 +218,8 @@ def _slab_of_table(base: Triangulation, layers: int) -> Triangulation:
     # the top of the first simplex of a prism is the bottom of the last one of the next: one position down
     image[:, :, 0, 0] = up
     image[:, :, k - 1, k] = down
-    return table(across.reshape(-1, k + 1), image.reshape(-1, k + 1, k + 1))
+    signs = _prism_signs(base.written, k, layers)
+    return table(across.reshape(-1, k + 1), image.reshape(-1, k + 1, k + 1), signs)
 
 
 def mapping_torus(base: Triangulation, symmetry: Mapping[int, int], layers: int = 3) -> Triangulation:
@@ -221,7 +237,8 @@ def mapping_torus(base: Triangulation, symmetry: Mapping[int, int], layers: int 
     Returns
     -------
     Triangulation
-        Labels as in `slab`; corner x of the top is corner ``symmetry[x]`` of the bottom.  No coordinates.
+        Labels and signs as in `slab`; corner x of the top is corner ``symmetry[x]`` of the bottom.  No
+        coordinates.
 
     Raises
     ------
@@ -266,7 +283,8 @@ def mapping_torus(base: Triangulation, symmetry: Mapping[int, int], layers: int 
         def word(x: int) -> str:
             return names[x % n] + (f".{x // n}" if x >= n else "")
 
-    return named(facets, word)
+    # rows as the prism orders them: the image of a row under the symmetry need not ascend
+    return named(signed(facets, _prism_signs(part.written, k, layers)), word)
 
 
 def _contained(rows: np.ndarray, among: np.ndarray) -> np.ndarray:

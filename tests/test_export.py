@@ -65,6 +65,7 @@ SKELETONS = {
         "4d-melon-4", "3d-snapped-tetrahedron", "4d-twisted-simplex", "four_simplices_2_0", "kuhn-torus-2x1",
     ]},
     "words": lambda: build(Triangulation.from_facets(words(sp.move_side(4, 3))), points=True),
+    "odd words": lambda: build(Triangulation.from_facets([['a"b', "<&>", "é'", "\\n", "]]>"]])),
     "singular": lambda: build(
         Triangulation.from_facets(sp.SINGULAR["3d-pinched-edge"][0]), keep_singular=True
     ),
@@ -352,8 +353,8 @@ def test_vtk_holds_numbers_and_orientations(tmp_path):
 
 
 def test_periodic_charts_stay_whole(tmp_path):
-    """No line of a periodic grid is longer than that of a path simplex: sqrt(7/8) from its first corner to its
-    centre, and a third of that from there to the facet."""
+    """The longest line is a third of sqrt(7/8), the way from the first corner of a path simplex to its centre; none
+    goes across the period."""
     points = np.stack(np.meshgrid(*[np.arange(3)] * 3, indexing="ij"), -1).reshape(-1, 3).astype(float)
     where = Coordinates(point=points, period=np.full(3, 3.0))
     t = Triangulation.from_facets(sp.kuhn_grid((3, 3, 3), periodic=True), coordinates=where)

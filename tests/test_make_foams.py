@@ -1,4 +1,5 @@
-"""First foams against counts of the dual two-complex that follow from joins of spheres (from memory, counted by hand)."""
+"""First foams against counts of the dual two-complex that follow from joins of spheres (from memory,
+counted by hand)."""
 
 import networkx as nx
 import pytest
@@ -28,8 +29,9 @@ def boundary_graph(t):
     return graph
 
 
-# Vertices, internal and external edges, internal and external faces; boundary graphs are products of complete graphs,
-# since the boundary of a move is the join of the boundaries of two simplices (U. Pachner 1991, from memory).
+# Vertices, internal and external edges, internal and external faces; boundary graphs are products of
+# complete graphs, since the boundary of a move is the join of the boundaries of two simplices (U. Pachner
+# 1991, from memory).
 FOAMS = {
     "tetrahedron": (lambda: simplex(3), (1, 0, 4, 0, 6)),
     "4-simplex": (lambda: simplex(4), (1, 0, 5, 0, 10)),

@@ -1,7 +1,7 @@
 """Lattices against closed formulas, volumes, and published tori.
 
-H. Freudenthal, Simplizialzerlegungen von beschraenkter Flachheit, Ann. of Math. 43 (1942) 580-582; H. W. Kuhn, Some
-combinatorial lemmas in topology, IBM J. Res. Dev. 4 (1960) 518-524 (from memory).
+H. Freudenthal, Simplizialzerlegungen von beschraenkter Flachheit, Ann. of Math. 43 (1942) 580-582; H. W.
+Kuhn, Some combinatorial lemmas in topology, IBM J. Res. Dev. 4 (1960) 518-524 (from memory).
 """
 
 from itertools import product
@@ -30,8 +30,8 @@ VARIANTS = {
     "barycentric": lambda d: 2**d * factorial(d),
 }
 
-# Simplices per cube of the periodic grid of paths: k! S(d, k) + (k + 1)! S(d, k + 1), S the Stirling numbers of the
-# second kind (from memory; the numbers are in H. W. Kuhn (1960) for d = 3).
+# Simplices per cube of the periodic grid of paths: k! S(d, k) + (k + 1)! S(d, k + 1), S the Stirling
+# numbers of the second kind (from memory).
 PER_CUBE = {2: (1, 3, 2), 3: (1, 7, 12, 6), 4: (1, 15, 50, 60, 24)}
 
 
@@ -126,9 +126,9 @@ def test_four_dimensional_finer_variants_have_euler_characteristic_zero(variant,
     assert orientable(t)
 
 
-# The flat 3-manifolds (W. Hantzsche, H. Wendt, Dreidimensionale euklidische Raumformen, Math. Ann. 110 (1935) 593-611;
-# J. A. Wolf, Spaces of Constant Curvature (1967), theorems 3.5.5 and 3.5.9; from memory): H_1 of the torus bundle with
-# monodromy A is Z + coker(A - 1).
+# The flat 3-manifolds (W. Hantzsche, H. Wendt, Dreidimensionale euklidische Raumformen, Math. Ann. 110
+# (1935) 593-611; J. A. Wolf, Spaces of Constant Curvature (1967), theorems 3.5.5 and 3.5.9; from memory):
+# H_1 of the torus bundle with monodromy A is Z + coker(A - 1).
 FLAT = {
     "half turn": (dict(twist="z=-x-y"), True, [2, 2, 0]),
     "exchange": (dict(twist="z=yx"), False, [0, 0]),

@@ -1,7 +1,7 @@
 """Boundaries of polytopes against published counts and coordinates.
 
-H. S. M. Coxeter, Regular Polytopes, 3rd ed. (1973), table I; D. Gale, Neighborly and cyclic polytopes, Proc. Sympos.
-Pure Math. 7 (1963) 225-232; B. Gruenbaum, Convex Polytopes (1967), section 4.7 (from memory).
+H. S. M. Coxeter, Regular Polytopes, 3rd ed. (1973), table I; D. Gale, Neighborly and cyclic polytopes,
+Proc. Sympos. Pure Math. 7 (1963) 225-232; B. Gruenbaum, Convex Polytopes (1967), section 4.7 (from memory).
 """
 
 from itertools import combinations, pairwise

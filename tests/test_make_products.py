@@ -310,8 +310,9 @@ def test_mapping_torus_of_the_identity_is_the_product_with_a_circle():
     assert is_closed_manifold(t)
 
 
-# A transposition of corners reverses the orientation of the sphere, a cycle of three keeps it: the bundle is S3 x S1 or
-# the twisted one, H = (Z, Z, 0, Z_2, 0) (D. W. Walkup 1970, B. Bagchi, B. Datta 2008; from memory).
+# A transposition of corners reverses the orientation of the sphere, a cycle of three keeps it: the bundle
+# is S3 x S1 or the twisted one, H = (Z, Z, 0, Z_2, 0) (D. W. Walkup 1970, B. Bagchi, B. Datta 2008; from
+# memory).
 @pytest.mark.parametrize(
     "symmetry,orientable_,free,even",
     [

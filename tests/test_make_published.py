@@ -28,7 +28,8 @@ from dualize.make import (
     torus,
 )
 
-# (space, vertices) -> the entry of the test catalogue, whose values are published or were recomputed separately
+# (space, vertices) -> the entry of the test catalogue, whose values are published or were recomputed
+# separately
 ENTRIES = {
     ("T2", 7): "torus_7",
     ("S3", 5): "simplex_bd_4",
@@ -201,8 +202,9 @@ def test_simplicial_lens_space_is_a_manifold_with_this_homology(p, q):
     assert f[0] - f[1] + f[2] - f[3] == 0
 
 
-# Turaev-Viro at r = 5 tells L(5, 1) from L(5, 2): V. Turaev, O. Viro, Topology 31 (1992) 865-902; the values from
-# N. Reshetikhin, V. Turaev (1991) and L. Jeffrey (1992), |S T^a S ...|^2 (from memory, recomputed).
+# Turaev-Viro at r = 5 tells L(5, 1) from L(5, 2): V. Turaev, O. Viro, Topology 31 (1992) 865-902; the
+# values from N. Reshetikhin, V. Turaev (1991) and L. Jeffrey (1992), |S T^a S ...|^2 (from memory,
+# recomputed).
 TURAEV_VIRO_5 = {
     (1, 0): (5 - 5**0.5) / 20,
     (2, 1): 0,

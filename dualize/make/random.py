@@ -69,10 +69,12 @@ def delaunay(points: np.ndarray | Sequence[Sequence[float]]) -> Triangulation:
     from scipy.spatial import Delaunay, QhullError
 
     where = np.asarray(points, dtype=np.float64)
-    if where.ndim != 2 or where.shape[1] not in (2, 3, 4) or not np.isfinite(where).all():
+    if where.ndim != 2 or where.shape[1] not in (2, 3, 4):
         raise InputError(
-            f"the points have the shape {where.shape}", hint="give finite numbers, 2 to 4 a point"
+            f"the points have the shape {where.shape}, not (points, axes)", hint="give 2 to 4 numbers a point"
         )
+    if (wrong := ~np.isfinite(where).all(axis=1)).any():
+        raise InputError("a point is not finite", f"point {np.flatnonzero(wrong)[0]}", "give finite numbers")
     d = where.shape[1]
     if len(where) <= d:
         raise InputError(

@@ -338,9 +338,7 @@ _TABLE = [
         (
             _integer("vertices", "how many, an even number", 10, 2),
             _dimension(),
-            Parameter(
-                "bipartite", "choice", "whether it is orientable", "yes", None, None, ("yes", "no"), True
-            ),
+            Parameter("bipartite", "switch", "whether it is orientable", "yes", choices=_YES, option=True),
             _SEED,
         ),
         "random",

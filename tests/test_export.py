@@ -353,8 +353,10 @@ def test_vtk_holds_numbers_and_orientations(tmp_path):
 
 
 def test_periodic_charts_stay_whole(tmp_path):
-    """The longest line is a third of sqrt(7/8), the way from the first corner of a path simplex to its centre; none
-    goes across the period."""
+    """The longest line is a third of sqrt(7/8), the way from the first corner of a path simplex to its centre.
+
+    None goes across the period.
+    """
     points = np.stack(np.meshgrid(*[np.arange(3)] * 3, indexing="ij"), -1).reshape(-1, 3).astype(float)
     where = Coordinates(point=points, period=np.full(3, 3.0))
     t = Triangulation.from_facets(sp.kuhn_grid((3, 3, 3), periodic=True), coordinates=where)

@@ -224,7 +224,7 @@ def test_readers_import_nothing_of_the_package(name):
         if isinstance(node, ast.Import | ast.ImportFrom)
         for module in ([node.module] if isinstance(node, ast.ImportFrom) else [x.name for x in node.names])
     }
-    assert imports <= {"argparse", "functools", "h5py", "itertools", "json", "math", "numpy"}
+    assert imports <= {"argparse", "functools", "h5py", "itertools", "json", "math", "numpy", "signal"}
 
 
 @pytest.mark.parametrize("reader", ["amplitude_projectors.py", "amplitude_symbols.py"])

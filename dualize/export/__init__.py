@@ -111,10 +111,9 @@ def export(
     >>> from dualize import Triangulation, build, export
     >>> s = build(Triangulation.from_facets([[0, 1, 2, 3], [1, 2, 3, 4]]))
     >>> with tempfile.TemporaryDirectory() as folder:
-    ...     export(s, folder + "/foam", "tables")
-    ...     print(*sorted(os.listdir(folder + "/foam")))
-    about.json edges.csv face_edges.csv face_vertices.csv faces.csv links.csv nodes.csv vertices.csv
-    wedges.csv
+    ...     export(s, folder + "/maps", "matrices")
+    ...     print(*sorted(os.listdir(folder + "/maps")))
+    about.json d1.mtx d2.mtx
     """
     from . import graphs, matrices, tables, vtk
     from .folder import write_folder

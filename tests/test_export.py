@@ -353,7 +353,7 @@ def test_vtk_holds_numbers_and_orientations(tmp_path):
 
 
 def test_periodic_charts_stay_whole(tmp_path):
-    """The longest line is a third of sqrt(7/8), the way from the first corner of a path simplex to its centre.
+    """The longest line is a third of sqrt(7/8), the way from a path simplex's first corner to its centre.
 
     None goes across the period.
     """

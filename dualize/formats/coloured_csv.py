@@ -22,7 +22,7 @@ from ..errors import InputError
 from ..triangulation import Triangulation
 from .registry import Content, Format, Options
 from .source import Source
-from .table import header_of, rows_of
+from .table import all_integers, cells, header_of, line_of, rows_of
 from .target import Target
 
 __all__ = ["FORMAT", "drops", "note_absent"]
@@ -37,10 +37,29 @@ def sniff(head: bytes) -> bool:
 
 def read(source: Source, options: Options) -> tuple[Content, str]:
     """Read a coloured graph."""
+    data = source.take()
+    rows = all_integers(data, 3) if header_of(data) in HEADERS else None
+    t = _of_words(data) if rows is None else _of_integers(data, rows)
+    note_absent(t, options)
+    return t, "CSV, coloured graph"
+
+
+def _of_integers(data: bytes, rows: np.ndarray) -> Triangulation:
+    names, ends = np.unique(rows[:, :2], return_inverse=True)
+    edges = np.column_stack([ends.reshape(-1, 2), rows[:, 2]])
+    return from_coloured_edges(
+        len(names),
+        edges,
+        name=lambda vertex: str(names[vertex]),
+        place=lambda row: f"line {line_of(data, row)}: {cells(data, row)}",
+    )
+
+
+def _of_words(data: bytes) -> Triangulation:
     seen: dict[str, None] = {}
     edges: list[tuple[str, str, int]] = []
     lines: list[str] = []
-    for number, (line, row) in enumerate(rows_of(source.take())):
+    for number, (line, row) in enumerate(rows_of(data)):
         place = f"line {line}: {','.join(row)[:80]}"
         if number == 0:
             if [x.lower() for x in row] not in HEADERS:
@@ -59,9 +78,7 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
             lines.append(place)
     names, at = order_of_vertices(list(seen))
     rows = np.array([(at[a], at[b], c) for a, b, c in edges], dtype=np.int64)
-    t = from_coloured_edges(len(names), rows, name=names.__getitem__, place=lines.__getitem__)
-    note_absent(t, options)
-    return t, "CSV, coloured graph"
+    return from_coloured_edges(len(names), rows, name=names.__getitem__, place=lines.__getitem__)
 
 
 def note_absent(t: Triangulation, options: Options) -> None:

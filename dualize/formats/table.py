@@ -10,9 +10,10 @@ import numpy as np
 
 from ..errors import InputError
 
-__all__ = ["cells", "header_of", "integers", "line_of", "rows_of"]
+__all__ = ["all_integers", "cells", "header_of", "integers", "line_of", "rows_of"]
 
 BOM = b"\xef\xbb\xbf"
+SMALL = 1 << 14  # bytes up to which lines are read one by one
 INTEGER = re.compile(r"[+-]?[0-9]{1,18}", re.ASCII)
 
 
@@ -63,6 +64,28 @@ def _show(row: list[str]) -> str:
     return text if len(text) <= 80 else text[:77] + "..."
 
 
+def all_integers(
+    data: bytes, width: int, header: bool = True, separator: str | None = ","
+) -> np.ndarray | None:
+    """The integers of a large file without fault, else None; see `integers`."""
+    fractions = b"." in data or re.search(rb"[0-9][eE]", data)  # numpy would cut them off
+    if fractions or len(data) < SMALL:
+        return None
+    try:
+        table = np.loadtxt(
+            BytesIO(data.removeprefix(BOM)),
+            dtype=np.int64,
+            delimiter=separator,
+            comments="#",
+            ndmin=2,
+            skiprows=line_of(data[: 1 << 16], -1) if header else 0,
+            encoding="utf-8",
+        )
+    except (ValueError, StopIteration, OverflowError, UnicodeError, InputError):
+        return None
+    return table if table.shape[1] == width and len(table) else None
+
+
 def integers(
     data: bytes,
     width: int,
@@ -89,23 +112,8 @@ def integers(
     InputError
         Naming the first line that does not fit.
     """
-    fractions = b"." in data or re.search(rb"[0-9][eE]", data)  # numpy would cut them off
-    try:
-        if fractions:
-            raise ValueError
-        table = np.loadtxt(
-            BytesIO(data.removeprefix(BOM)),
-            dtype=np.int64,
-            delimiter=separator,
-            comments="#",
-            ndmin=2,
-            skiprows=line_of(data[: 1 << 16], -1) if header else 0,
-            encoding="utf-8",
-        )
-        if table.shape[1] == width and len(table):
-            return table
-    except (ValueError, StopIteration, OverflowError, UnicodeError, InputError):
-        pass
+    if (table := all_integers(data, width, header, separator)) is not None:
+        return table
     out: list[list[int]] = []
     for number, (line, row) in enumerate(rows_of(data), -1 if header else 0):
         if number < 0:

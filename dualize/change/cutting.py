@@ -30,9 +30,9 @@ def cut(triangulation: Triangulation, facets: Sequence[Any]) -> Changed:
     Returns
     -------
     Changed
-        A point that falls into several keeps its label on the first simplex, and has new labels on the
-        others.  Where both sides of a cut keep all their points, the result is no simplicial complex, and is
-        a gluing table.
+        A point that falls into several keeps its label where most of its simplices are (the first of these,
+        if they are equally many), and has new labels elsewhere.  Where both sides of a cut keep all their
+        points, the result is no simplicial complex, and is a gluing table.
     """
     t, d = triangulation, triangulation.dimension
     is_labelled = t.corners is not None and t.matched
@@ -71,7 +71,8 @@ def _split(
     number_of = classes(table, 1).number
     _, first = np.unique(number_of, return_index=True)
     label = t.corners.ravel()[first]  # label of each class; classes are numbered by first occurrence
-    _, original = np.unique(label, return_index=True)
+    most = np.lexsort((first, -np.bincount(number_of.ravel()), label))
+    original = most[np.unique(label[most], return_index=True)[1]]
     again = np.setdiff1d(np.arange(len(label)), original)
     words = None if t.corner_names is None else list(t.corner_names)
     fresh: list = []

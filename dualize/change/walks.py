@@ -49,7 +49,8 @@ def walk(
         Number of simplices to which the walk is drawn; by default the present one.
     spread : int, optional
         Within this distance of `target` moves of all kinds are free; outside, those that lead further away
-        are taken once in 16 times.  By default a twentieth of `target`, at least 2 D.
+        are taken once in 16 times, in 256 at twice the distance, and so on.  By default a quarter of
+        `target`, at least 2 D.
     kinds : sequence of str, optional
         The kinds of moves, all by default; one that is given twice is tried twice as often.
 
@@ -110,7 +111,7 @@ def walk_states(
     number(seed, "seed", 0)
     d = t.dimension
     goal = len(t) if target is None else number(target, "target", 1)
-    free = max(2 * d, goal // 20) if spread is None else number(spread, "spread", 0)
+    free = max(2 * d, goal // 4) if spread is None else number(spread, "spread", 0)
     lottery = _kinds(d, kinds)
     state = State(t, work=moves, seed=seed)
     made = 0

@@ -242,9 +242,12 @@ def walk_moves(
                 z //= len(lottery)
                 step = v - 2 * kind
                 there = abs(n + step - state[TARGET])
-                if there > state[SPREAD] and there > abs(n - state[TARGET]) and (z & 15) != 0:
-                    continue
-                z >>= 4
+                if there > state[SPREAD] and there > abs(n - state[TARGET]):
+                    # away from the target: once in 16 times, and 16 times more seldom at each further spread
+                    far = min(4, there // (state[SPREAD] + 1))
+                    if (z & ((1 << (4 * far)) - 1)) != 0:
+                        continue
+                z >>= 16
                 some = subset_start[kind + 1] - subset_start[kind]
                 mask = subset[subset_start[kind] + z % some]
                 s = (z // some) % n

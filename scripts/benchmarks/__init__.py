@@ -1,0 +1,1 @@
+"""Timing cases, a module for each room; `scripts/bench` runs them."""

@@ -34,6 +34,7 @@ def copy(tmp_path):
     folder = tmp_path / "fresh copy"
     folder.mkdir()
     shutil.copytree(MESHES, folder / "meshes")
+    shutil.copytree(MESHES.parent / "scripts", folder / "scripts")
     return folder
 
 

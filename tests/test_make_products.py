@@ -271,6 +271,10 @@ ALIKE = {
     "slab 3": lambda: slab(lattice(2, 1)),
     "slab of a table": lambda: slab(lens_space(3, 1)),
     "mapping torus": lambda: mapping_torus(lattice(1, 1, 1), {}),
+    "cone": lambda: cone(lattice(2, 1, 1)),
+    "suspension": lambda: suspension(lattice(2, 1, 1)),
+    "suspension of a table": lambda: suspension(lens_space(3, 1)),
+    "join": lambda: join(interval(), interval()),
 }
 
 

@@ -232,6 +232,61 @@ def test_lens_space_table_has_the_published_turaev_viro_value(p, q, tmp_path):
     assert turaev_viro(load(foam), 5) == pytest.approx(TURAEV_VIRO_5[p, q], abs=1e-9)
 
 
+def nullspace(matrix, p):
+    """A basis of the kernel of a matrix over the field of p elements, one row each."""
+    m, pivots, row = matrix % p, [], 0
+    for column in range(m.shape[1]):
+        found = np.flatnonzero(m[row:, column])
+        if not len(found):
+            continue
+        m[[row, row + found[0]]] = m[[row + found[0], row]]
+        m[row] = m[row] * pow(int(m[row, column]), -1, p) % p
+        others = np.flatnonzero(m[:, column])
+        others = others[others != row]
+        m[others] = (m[others] - np.outer(m[others, column], m[row])) % p
+        pivots.append(column)
+        row += 1
+        if row == len(m):
+            break
+    free = [c for c in range(m.shape[1]) if c not in set(pivots)]
+    basis = np.zeros((len(free), m.shape[1]), dtype=np.int64)
+    basis[np.arange(len(free)), free] = 1
+    basis[:, pivots] = -m[: len(pivots), free].T % p
+    return basis
+
+
+def linking_numbers(t, p):
+    """Values of ``a cup (da / p)`` on the manifold for a basis of cocycles a mod p, zeros left out."""
+    corners = t.corners
+    edges = np.unique(np.vstack([corners[:, [i, j]] for i in range(4) for j in range(i + 1, 4)]), axis=0)
+    number = {tuple(e): x for x, e in enumerate(edges.tolist())}
+    faces = np.unique(np.vstack([np.delete(corners, i, axis=1) for i in range(4)]), axis=0).tolist()
+    d = np.zeros((len(faces), len(edges)), dtype=np.int64)
+    for f, (x, y, z) in enumerate(faces):
+        d[f, [number[y, z], number[x, y]]] = 1
+        d[f, number[x, z]] = -1
+    signs = dualize.build(t)["vertices/orientation"].astype(int)
+    found = []
+    for a in nullspace(d, p):
+        bockstein = dict(zip(map(tuple, faces), (d @ a // p).tolist(), strict=True))
+        pairs = zip(signs, corners.tolist(), strict=True)
+        found.append(sum(int(s) * int(a[number[w, x]]) * bockstein[x, y, z] for s, (w, x, y, z) in pairs) % p)
+    return {x for x in found if x}
+
+
+# The linking form of L(p, q) is q / p up to squares, so that for p = 5, where -1 is a square, q = 1, 4
+# and q = 2, 3 differ (H. Seifert, W. Threlfall, Lehrbuch der Topologie (1934), section 77; from memory).
+@pytest.mark.parametrize("q,square", [(1, True), (4, True), (2, False), (3, False)])
+def test_simplicial_lens_space_has_the_linking_form_of_its_q(q, square):
+    found = linking_numbers(lens_space(5, q, simplicial=True), 5)
+    assert found
+    assert found <= ({1, 4} if square else {2, 3})
+
+
+def test_published_lens_space_has_the_linking_form_of_its_q():
+    assert linking_numbers(published("L(5,1)"), 5) <= {1, 4}
+
+
 @pytest.mark.parametrize(
     "make,message",
     [

@@ -118,6 +118,12 @@ def test_numbers_are_checked_before_complexes_are_made():
         recipe("slab")("no such thing", 0)
 
 
+def test_no_means_no():
+    asked = make.make("coloured-graph", 14, 3, bipartite="no", seed=3)
+    assert asked == make.coloured_graph(14, 3, bipartite=False, seed=3)
+    assert make.make("lattice", 2, 2, coordinates="no").coordinates is None
+
+
 def test_factors_are_arrays():
     assert evaluate_any("circle(4)").tolist() == [[0, 1], [1, 2], [2, 3], [3, 0]]
 

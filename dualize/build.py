@@ -483,15 +483,12 @@ def _has_pinches(work: _Work, faces: _Faces) -> bool:
     factors = np.frombuffer(os.urandom(8 * work.k), dtype=np.int64) >> 1 | 1
     shift = 63 - max(1, (n // 16).bit_length())
     key = np.empty(n, dtype=np.int64)
-    size = np.zeros(1 << (63 - shift), dtype=np.int64)
     corners, slots = work.t.corners.ravel(), work.slots.ravel()
     tables = (a["faces/vertex"], a["faces/wedge"], a["faces/vertex_offsets"])
-    run(mix_ridges, corners, *tables, slots, factors, key, size, shift, work.axes, n)
-    start = np.zeros(len(size) + 1, dtype=np.int64)
-    np.cumsum(size, out=start[1:])
     entry = np.empty(n, dtype=np.int64)
-    run(fill_keys, key, start[:-1].copy(), entry, shift, n)
-    if not any(run.split(any_repeat, len(size), start, entry)):
+    mix = (mix_ridges, corners, *tables, slots, factors, key, shift, work.axes)
+    start = run.bucketed(n, 1 << (63 - shift), mix, (fill_keys, key, entry, shift))
+    if not any(run.split(any_repeat, len(start) - 1, start, entry)):
         return False
     # equal keys are equal ridges but for an accident
     return len(np.unique(_ridges(work, faces), axis=0)) < n

@@ -481,12 +481,9 @@ def _match(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, np.ndarray]:
     flat = points.ravel()
     degree = np.bincount(flat, minlength=count).astype(np.int32)
     bucket = np.empty(2 * n, dtype=np.int8)
-    size = np.zeros(count, dtype=np.int64)
-    run(bucket_sizes, flat, degree, bucket, size, axes, n)
-    start = np.zeros(count + 1, dtype=np.int64)
-    np.cumsum(size, out=start[1:])
     entry = np.empty(n * k, dtype=_id_dtype(n * k))
-    run(fill_buckets, flat, bucket, start[:-1].copy(), entry, axes, n)
+    choose = (bucket_sizes, flat, degree, bucket, axes)
+    start = run.bucketed(n, count, choose, (fill_buckets, flat, bucket, entry, axes))
     across: np.ndarray = np.empty((n, k), dtype=_id_dtype(n))
     rank = np.empty((n, k), dtype=np.uint8)
     # ranges of buckets with about equal numbers of half-facets
@@ -494,7 +491,7 @@ def _match(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, np.ndarray]:
     cuts = [0, *np.searchsorted(start, [n * k * p // parts for p in range(1, parts)]).tolist(), count]
     calls = []
     for lo, hi in pairwise(cuts):
-        room = 2 * int(size[lo:hi].max(initial=0))
+        room = 2 * int(np.diff(start[lo : hi + 1]).max(initial=0))
         work = (np.empty(room, np.int64), np.empty(room, np.int64), np.empty(room, np.int64))
         keeping = permutations_of(k - 1).keeping.ravel()
         calls.append((flat, start, entry, keeping, across.ravel(), rank.ravel(), *work, axes, lo, hi))

@@ -67,6 +67,29 @@ class Engine:
         self.prepare(kernel)
         return self.tasks([partial(self.here, kernel, *call) for call in calls])
 
+    def bucketed(self, length: int, buckets: int, count: tuple, fill: tuple) -> np.ndarray:
+        """Sort things into buckets, in their order, by a kernel that counts and one that fills.
+
+        `count` and `fill` are a kernel and its first arguments; each range of ``0 .. length - 1`` is handed
+        to either with an array of its own: the sizes to add to, then the places to begin at.
+
+        Returns
+        -------
+        ndarray of int64, shape (buckets + 1,)
+            Where each bucket begins.
+        """
+        ranges = self.ranges(length)
+        sizes = np.zeros((len(ranges), buckets), dtype=np.int64)
+        self.each(count[0], [(*count[1:], sizes[r], *ends) for r, ends in enumerate(ranges)])
+        start = np.zeros(buckets + 1, dtype=np.int64)
+        np.cumsum(sizes.sum(axis=0), out=start[1:])
+        # a range begins behind what the ranges before it put into the same bucket
+        place = start[:-1].copy()
+        for size in sizes:
+            size[:], place = place, place + size
+        self.each(fill[0], [(*fill[1:], sizes[r], *ends) for r, ends in enumerate(ranges)])
+        return start
+
     def tasks(self, functions: list[Callable[[], Any]]) -> list[Any]:
         """Call the functions, at most `threads` at a time and begun in order; their results in order."""
         if self.inline:

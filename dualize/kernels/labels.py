@@ -58,7 +58,7 @@ def number_labels(labels, factors, keys, numbers, shift, out, progress):
     return 1
 
 
-def bucket_sizes(points, degree, bucket, size, axes, n):
+def bucket_sizes(points, degree, bucket, axes, size, lo, hi):
     """Choose the two corners of lowest degree of each simplex and count what the buckets will hold.
 
     `points` (N, K) are the corners as numbers from 0; `degree` says in how many simplices each lies.  Into
@@ -66,7 +66,7 @@ def bucket_sizes(points, degree, bucket, size, axes, n):
     position); a half-facet lies in the bucket of the first, unless it is opposite to it.
     """
     k = len(axes)
-    for s in range(n):
+    for s in range(lo, hi):
         base = s * k
         best = 0
         second = 1
@@ -87,10 +87,10 @@ def bucket_sizes(points, degree, bucket, size, axes, n):
     return 0
 
 
-def fill_buckets(points, bucket, cursor, entry, axes, n):
+def fill_buckets(points, bucket, entry, axes, cursor, lo, hi):
     """Write the half-edges ``s * K + i`` into their buckets; `cursor` begins as the buckets' offsets."""
     k = len(axes)
-    for s in range(n):
+    for s in range(lo, hi):
         base = s * k
         best = bucket[2 * s]
         second = bucket[2 * s + 1]

@@ -3,14 +3,14 @@
 __all__ = ["any_repeat", "fill_keys", "mix_ridges"]
 
 
-def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, size, shift, axes, n):
+def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, shift, axes, size, lo, hi):
     """A 63-bit key of the ridge labels of each face, and how many each bucket ``key >> shift`` gets.
 
     The labels are read at the first passage of the face.  The `factors` are drawn at random for each run, so
     no choice of labels makes different ridges collide on purpose; equal ridges always have equal keys.
     """
     k = len(axes)
-    for f in range(n):
+    for f in range(lo, hi):
         s = vertex[offsets[f]]
         w = wedge[offsets[f]]
         mixed = 0
@@ -25,9 +25,9 @@ def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, size, shift
     return 0
 
 
-def fill_keys(key, cursor, entry, shift, n):
+def fill_keys(key, entry, shift, cursor, lo, hi):
     """Write the keys into their buckets; `cursor` begins as the offsets of the buckets."""
-    for x in range(n):
+    for x in range(lo, hi):
         b = key[x] >> shift
         entry[cursor[b]] = key[x]
         cursor[b] += 1

@@ -129,8 +129,8 @@ def test_the_foam_of_a_suspended_torus_sees_the_space_without_its_singular_point
 
 
 def test_a_suspended_homology_sphere_is_undecided_and_the_report_says_so():
-    """No manifold, though every link has the homology of a sphere: two links are Poincaré's sphere, whose group
-    has order 120 (H. Seifert, W. Threlfall, Lehrbuch der Topologie, 1934; from memory)."""
+    """No manifold, though every link has the homology of a sphere: two links are Poincaré's sphere, whose
+    group has order 120 (H. Seifert, W. Threlfall, Lehrbuch der Topologie, 1934; from memory)."""
     report = audit(Triangulation.from_facets(suspension(CATALOGUE["poincare_16"].facets)))
     assert report.ok
     assert report["homology-manifold"].verdict == "yes"
@@ -145,7 +145,7 @@ def test_a_suspended_homology_sphere_is_undecided_and_the_report_says_so():
     [("l31_12", "Z_3"), ("l51_16", "Z_5"), ("rp3_11", "Z_2"), ("s2_x_s1_10", "Z"), ("t3_15", "Z + Z + Z")],
 )
 def test_torsion_in_a_link_is_seen_whatever_the_prime(name, group):
-    """H_1 of lens spaces, S2 x S1, T3 (H. Seifert, W. Threlfall, Lehrbuch der Topologie, 1934; from memory)."""
+    """H_1 of lens spaces, S2 x S1, T3: H. Seifert, W. Threlfall, Topologie (1934), from memory."""
     report = audit(Triangulation.from_facets(suspension(CATALOGUE[name].facets)))
     assert report["manifold"].verdict == "no"
     assert report["manifold"].where.count(f"H_1 = {group}") == 2

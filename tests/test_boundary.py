@@ -93,8 +93,8 @@ def test_building_the_boundary_gives_the_induced_orientation(facets):
 
 
 def test_the_induced_orientation_of_a_tetrahedron_is_that_of_its_boundary_map():
-    """d [0 1 2 3] = [1 2 3] - [0 2 3] + [0 1 3] - [0 1 2] (J. R. Munkres, Elements of Algebraic Topology, 1984,
-    section 5)."""
+    """d [0 1 2 3] = [1 2 3] - [0 2 3] + [0 1 3] - [0 1 2] (J. R. Munkres, Elements of Algebraic Topology,
+    1984, section 5)."""
     boundary = labelled([[0, 1, 2, 3]]).boundary()
     signs = {
         tuple(row): s for row, s in zip(boundary.corners.tolist(), boundary.written.tolist(), strict=True)

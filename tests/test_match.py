@@ -134,7 +134,7 @@ def test_foams_of_two_dimensions_do_not_match():
 )
 def test_maps_number_as_the_automorphisms_of_the_graph(facets):
     """The dual graph of the boundary of a simplicial polytope determines it (R. Blind, P. Mani-Levitska,
-    Aequationes Math. 34 (1987) 287-297, from memory): its automorphisms are those of the graph, by networkx."""
+    Aequationes Math. 34 (1987) 287-297, from memory): its automorphisms are those networkx counts."""
     s = built(facets)
     graph = nx.Graph(s.boundary_graph().to_undirected())
     found = match(s, s, by="isomorphism", limit=10**6)

@@ -125,7 +125,7 @@ def _own_signs(x: Subject) -> list[str]:
     s, w = x.s, x.walk
     assert x.boundary is not None
     dual = build(x.boundary, keep_singular=True, threads=x.threads)
-    orientable = np.asarray(s.flags["orientable"], dtype=bool)[w.bulk]
+    orientable = np.asarray(x.orientable)[w.bulk]
     wrong = []
     for n in np.flatnonzero(orientable & (dual["vertices/orientation"] != s["nodes/orientation"]))[
         :10

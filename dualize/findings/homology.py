@@ -82,7 +82,7 @@ def _duality(x: Subject, betti: dict[int, list[int]]) -> Finding:
         return Finding("duality", "identity", "not checked", against="not closed")
     if x.link_trouble:
         return Finding("duality", "identity", "not checked", against=x.link_trouble)
-    fields = [p for p in betti if p == 2 or all(x.s.flags["orientable"])]
+    fields = [p for p in betti if p == 2 or all(x.orientable)]
     names = ", ".join(map(_name, fields))
     wrong = [_name(p) for p in fields if betti[p] != betti[p][::-1]]
     against = "Poincaré duality, b_k = b_(D-k)"
@@ -93,7 +93,7 @@ def _duality(x: Subject, betti: dict[int, list[int]]) -> Finding:
 
 def check_orientability(x: Subject) -> Iterator[Finding]:
     """Components without a twist against the top Betti number relative to the boundary."""
-    mine = sum(map(bool, x.s.flags["orientable"]))
+    mine = sum(x.orientable)
     name, field = "orientability", PRIMES[-1]
     if (reason := x.over(GUDHI_LIMIT)) is not None:
         yield Finding(name, "identity", "not checked", f"{mine} orientable components", reason)

@@ -134,7 +134,7 @@ def check_space(x: Subject) -> Iterator[Finding]:
         "connected", parts == 1, f"{parts} component{'' if parts == 1 else 's'}", "neighbours across facets"
     )
     yield answer("closed", x.closed, f"{c['nodes']} boundary facets")
-    flags = list(map(bool, s.flags["orientable"]))
+    flags = x.orientable
     bad = [f"component {k}" for k, good in enumerate(flags) if not good]
     yield answer(
         "orientable",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from functools import cached_property
 from math import factorial
 from typing import TYPE_CHECKING, Any, NamedTuple
@@ -97,9 +98,11 @@ class Subject:
     def read_back(self) -> Triangulation | SkeletonError:
         """The triangulation read from the edges, or why that fails."""
         try:
-            return gluing_of(self.s, threads=self.threads)
+            found = gluing_of(self.s, threads=self.threads)
         except SkeletonError as error:
             return error
+        # a skeleton does not say whether its labels were matched, the triangulation does
+        return found if self.given is None else replace(found, matched=found.matched and self.given.matched)
 
     @cached_property
     def obstacle(self) -> str | None:
@@ -128,6 +131,14 @@ class Subject:
     @property
     def closed(self) -> bool:
         return int(self.s.counts["nodes"]) == 0
+
+    @cached_property
+    def orientable(self) -> list[bool]:
+        """Whether each component is orientable: it has no twisted edge."""
+        s = self.s
+        twisted = np.flatnonzero(s["edges/twist"][: s.counts["edges_internal"]])
+        parts = set(s["vertices/component"][s["edges/source"][twisted, 0]].tolist())
+        return [k not in parts for k in range(s.counts["components"])]
 
     @cached_property
     def title(self) -> str:

@@ -141,7 +141,7 @@ def gluing_schema() -> dict[str, Any]:
         return {
             "across": _nested({"type": "integer", "minimum": -1}, (None, k)),
             "carry": _nested({"type": "integer", "minimum": -1, "maximum": d}, (None, k, k)),
-            "corners": _nested({"type": "integer"}, (None, k)),
+            "corners": {"anyOf": [_nested({"type": x}, (None, k)) for x in ("integer", "string")]},
         }
 
     return {
@@ -153,8 +153,11 @@ def gluing_schema() -> dict[str, Any]:
             "written": {"type": "array", "items": {"enum": [1, -1]}},
             "corner_names": {"type": "array", "items": {"type": "string"}, "uniqueItems": True},
             "coordinates": {"type": "object"},
+            "matched": {"type": "boolean"},
+            "coloured": {"type": "boolean"},
         },
-        "required": ["across", "carry"],
+        "required": ["across"],
+        "allOf": [{"anyOf": [{"required": ["carry"]}, {"required": ["corners"]}]}],
         "anyOf": [{"properties": by_dimension(d)} for d in (2, 3, 4)],
     }
 

@@ -41,7 +41,7 @@ Triangulation = dualize.Triangulation
 
 
 def white_to_black(*strings):
-    """The graph in which colour c joins white vertex a to black vertex strings[c][a]; black ones come second."""
+    """Colour c joins white vertex a to black vertex strings[c][a]; black ones are numbered second."""
     half = len(strings[0])
     edges = [[a, half + int(b), c] for c, row in enumerate(strings) for a, b in enumerate(row)]
     return from_coloured_edges(2 * half, edges)

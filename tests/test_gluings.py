@@ -1,8 +1,10 @@
 """Gluing tables: forms of input and output, refusals with their places, invariance, homology."""
 
+import json
 import random
 import re
 
+import jsonschema
 import numpy as np
 import pytest
 from catalogue import CATALOGUE, F_OF_TWO_FOUR_SIMPLICES, NAMES, SMALL_GLUINGS
@@ -25,6 +27,7 @@ from specimens import (
 import dualize
 from dualize.audit import audit
 from dualize.formats import decode, encode, open_any, write
+from dualize.spec import gluing_schema
 from dualize.topology.classes import census, classes
 from dualize.topology.derived import first_derived, second_derived_facets
 from dualize.topology.gudhi import PRIMES, betti_numbers, simplex_tree, simplices_per_dimension
@@ -206,6 +209,19 @@ def test_two_simplices_with_the_same_labels_are_told_apart_by_their_neighbours()
     assert dualize.build(t).counts["faces_internal"] == 6
 
 
+def test_the_audit_does_not_take_such_simplices_for_one(tmp_path):
+    """A sphere: two tetrahedra glued along their boundaries (common knowledge)."""
+    t = Triangulation.from_neighbours([[0, 1, 2, 3], [0, 1, 2, 3]], [[1] * 4, [0] * 4])
+    path = tmp_path / "sphere.json"
+    dualize.build(t).write(path)
+    for content in (t, dualize.load(path)):
+        report = audit(content)
+        assert report.ok
+        assert report["f-vector"].figure == [4, 6, 4, 2]
+        assert report["manifold"].verdict == "yes"
+        assert report["betti"].figure == {f"Z_{p}": [1, 0, 0, 1] for p in PRIMES}
+
+
 def test_a_label_twice_in_a_simplex_is_good_where_no_facet_has_it_twice():
     # labels 0, 0, 1, 2: the two triangles that lack a 0 are glued to each other
     t = Triangulation.from_neighbours([[0, 0, 1, 2]], [[0, 0, -1, -1]])
@@ -308,6 +324,35 @@ def test_the_mark_matched_is_checked(corners, what):
     else:
         with pytest.raises(dualize.InputError, match=what):
             make()
+
+
+MARKED = {
+    "table": (TABLES["4d-twisted-simplex"], "json"),
+    "matched": (Triangulation.from_facets(LABELLED["3d-sphere"]), "gluing"),
+    "words": (Triangulation.from_facets([["a", "b", "c"], ["b", "c", "d"]]), "gluing"),
+    "coloured": (first_derived(TABLES["2d-melon-2"]), "json"),
+}
+
+
+@pytest.mark.parametrize("name", MARKED)
+def test_written_table_fits_the_published_schema(name):
+    t, kind = MARKED[name]
+    document = json.loads(encode(t, kind))
+    jsonschema.validate(document, gluing_schema())
+    assert document.get("matched", False) is t.matched
+    assert document.get("coloured", False) is t.coloured
+    document["coloured"] = "yes"
+    with pytest.raises(jsonschema.ValidationError, match="'yes' is not of type 'boolean'"):
+        jsonschema.validate(document, gluing_schema())
+    with pytest.raises(dualize.InputError, match="'yes', not true or false"):
+        decode(json.dumps(document).encode(), "json")
+
+
+def test_labels_and_neighbours_in_json_fit_the_published_schema():
+    document = {"corners": [["a", "b", "c"], ["d", "b", "c"]], "across": [[1, -1, -1], [0, -1, -1]]}
+    jsonschema.validate(document, gluing_schema())
+    with pytest.raises(jsonschema.ValidationError, match="is not valid under any"):
+        jsonschema.validate({"across": document["across"]}, gluing_schema())
 
 
 # --------------------------------------------------------------------------------------------------

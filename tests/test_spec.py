@@ -184,7 +184,7 @@ BROKEN_GLUINGS = {
     "simplex below nothing": put("across", 0, 0, -2),
     "corner too large": put("carry", 0, 0, 0, 4),
     "written as zero": put("written", 0, 0),
-    "label in words": put("corners", [["a", "b", "c", "d"]]),
+    "words and numbers": put("corners", [["a", "b", "c", 3]]),
 }
 
 

@@ -13,8 +13,10 @@ from ..errors import SkeletonError, TriangulationError
 from ..kernels import engine
 from ..kernels.audit import glue_edges
 from ..kernels.permutations import permutations_of
+from ..layout import wedge_pairs
 from ..skeleton import Skeleton
 from ..triangulation import Coordinates, Triangulation
+from .classes import count_rows
 
 __all__ = ["gluing_of"]
 
@@ -82,9 +84,28 @@ def gluing_of(skeleton: Skeleton, *, threads: int | None = None) -> Triangulatio
         corners=labels,
         corner_names=s.corner_names,
         coordinates=None if all(c is None for c in charts) else Coordinates(*charts),
-        matched=labels is not None and _matched(labels, across, rank, threads),
+        matched=labels is not None and not _told_apart(s, labels) and _matched(labels, across, rank, threads),
         coloured="colours/edge" in s and not rank[across >= 0].any(),
     )
+
+
+def _told_apart(s: Skeleton, labels: np.ndarray) -> bool:
+    """Whether simplices or faces share their labels and nothing was recorded: then labels do not name them.
+
+    Where labels were matched, twins and pinched ridges are recorded as singular.
+    """
+    if s.flags["singular"]:
+        return False
+    slots = np.array(wedge_pairs(s.dimension))
+    others = np.array([[c for c in range(s.dimension + 1) if c not in pair] for pair in slots.tolist()])
+    first = s["faces/vertex_offsets"][:-1]
+    if len(first) == 0 or first.min() < 0 or first.max() >= len(s["faces/vertex"]):
+        return False
+    vertex, wedge = s["faces/vertex"][first], s["faces/wedge"][first]
+    if vertex.min() < 0 or vertex.max() >= len(labels) or wedge.min() < 0 or wedge.max() >= len(slots):
+        return False
+    ridges = np.sort(np.take_along_axis(labels[vertex], others[wedge], axis=1), axis=1)
+    return count_rows(labels) < len(labels) or count_rows(ridges) < len(ridges)
 
 
 def _matched(labels: np.ndarray, across: np.ndarray, rank: np.ndarray, threads: int | None) -> bool:

@@ -25,7 +25,7 @@ from .export import export
 from .match import match
 
 if TYPE_CHECKING:
-    from . import change, make
+    from . import change, make, spins
     from .audit import Finding, Report
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
     from .export import read_export
@@ -55,7 +55,7 @@ _HOMES = {
 }
 
 # rooms that are used under their own names, imported on first use
-_ROOMS = ("change", "make")
+_ROOMS = ("change", "make", "spins")
 
 __all__ = [
     "Coordinates",
@@ -79,6 +79,7 @@ __all__ = [
     "match",
     "read",
     "read_export",
+    "spins",
 ]
 
 

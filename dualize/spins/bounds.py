@@ -11,7 +11,7 @@ import numpy as np
 
 from ..errors import InputError, LimitError
 from ..progress import progress
-from .growth import growth
+from .unbounded import growth
 from .parity import Sectors, parity_sectors
 from .rules import NO_BOUND, Rules
 

@@ -16,25 +16,41 @@ from ..errors import LimitError
 from ..skeleton import Skeleton
 from ..topology.integral import abelian_group
 from ..topology.maps import foam_maps
-from .growth import growth, growth_rays
+from .unbounded import growth, growth_rays
 from .rules import Rules
 
-__all__ = ["Estimate", "estimate", "interior_rank", "omega"]
+__all__ = ["Estimate", "estimate", "interior_group", "interior_homology", "interior_rank", "omega"]
 
 
 def interior_rank(skeleton: Skeleton) -> int:
-    """Rank over Q of the boundary map from the internal faces to the internal edges, exact.
+    """Rank over Q of the boundary map from the internal faces to the internal edges, exact."""
+    return skeleton.counts["edges_internal"] - interior_group(skeleton).count(0)
+
+
+def interior_group(skeleton: Skeleton) -> list[int]:
+    """The cokernel of the boundary map from internal faces to internal edges, as invariant factors.
 
     Notes
     -----
-    Integer elimination with unit pivots, then the Smith normal form of what is left.
+    Integer elimination with unit pivots, then the Smith normal form of what is left.  The factors other than
+    0 are the torsion of H_1 of the foam's interior.
     """
     matrix = interior_map(skeleton)
     columns: list[dict[int, int]] = []
     for a, b in zip(matrix.indptr[:-1].tolist(), matrix.indptr[1:].tolist(), strict=True):
         rows, values = matrix.indices[a:b].tolist(), matrix.data[a:b].tolist()
         columns.append({r: v for r, v in zip(rows, values, strict=True) if v})
-    return matrix.shape[0] - abelian_group(matrix.shape[0], columns).count(0)
+    return abelian_group(matrix.shape[0], columns)
+
+
+def interior_homology(skeleton: Skeleton, group: list[int]) -> list[int]:
+    """H_1 of the foam's interior as invariant factors, 0 for a free one, from `interior_group`.
+
+    Edges that bound nothing are cycles up to the rank of the graph, that is the number of vertices less that
+    of the components (of the dual graph of internal edges).
+    """
+    free = group.count(0) - (skeleton.counts["vertices"] - skeleton.counts["components"])
+    return [0] * free + [x for x in group if x != 0]
 
 
 def interior_map(skeleton: Skeleton) -> Any:

@@ -14,29 +14,25 @@ function from one to the other or from the skeleton to an answer.  ``dualize spe
 
 from __future__ import annotations
 
+import sys
 from importlib import import_module
+from types import ModuleType
 from typing import TYPE_CHECKING, Any
-
-# A function that bears its module's name is imported at once: were it left to `__getattr__`, importing the
-# module first (`import dualize.build`) would bind the name to the module.
-from .audit import audit
-from .build import build
-from .export import export
-from .match import match
 
 if TYPE_CHECKING:
     from . import change, make, spins
-    from .audit import Finding, Report
+    from .audit import Finding, Report, audit
+    from .build import build
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
-    from .export import read_export
+    from .export import export, read_export
     from .formats import load, read
-    from .match import Match
+    from .match import Match, match
     from .skeleton import Skeleton
     from .triangulation import Coordinates, Triangulation
 
 __version__ = "0.1.0"
 
-# name -> module; imported on first use, so that `import dualize` costs little more than numpy
+# name -> module; imported on first use, so that `import dualize` costs next to nothing
 _HOMES = {
     "Coordinates": "triangulation",
     "DualizeError": "errors",
@@ -49,7 +45,11 @@ _HOMES = {
     "SkeletonError": "errors",
     "Triangulation": "triangulation",
     "TriangulationError": "errors",
+    "audit": "audit",
+    "build": "build",
+    "export": "export",
     "load": "formats",
+    "match": "match",
     "read": "formats",
     "read_export": "export",
 }
@@ -95,3 +95,14 @@ def __getattr__(name: str) -> Any:
 
 def __dir__() -> list[str]:
     return sorted([*globals(), *_HOMES, *_ROOMS])
+
+
+class _Package(ModuleType):
+    """This package: a function of the name of its module stays the function when that is imported."""
+
+    def __setattr__(self, name: str, value: object) -> None:
+        if not (isinstance(value, ModuleType) and _HOMES.get(name) == name):
+            super().__setattr__(name, value)
+
+
+sys.modules[__name__].__class__ = _Package

@@ -6,7 +6,6 @@ same on every run and for every number of threads.
 
 from __future__ import annotations
 
-import os
 from collections.abc import Callable
 from functools import partial
 from typing import NamedTuple
@@ -14,7 +13,7 @@ from typing import NamedTuple
 import numpy as np
 
 from .errors import TriangulationError
-from .kernels import Engine, engine
+from .kernels import Engine, engine, random_factors
 from .kernels.classes import join_pairs, join_points, join_segments, number_classes, number_segments
 from .kernels.faces import (
     fill_edge_faces,
@@ -480,14 +479,14 @@ def _has_pinches(work: _Work, faces: _Faces) -> bool:
     assert work.t.corners is not None
     run, n = work.run, len(faces.twists)
     a = faces.arrays
-    factors = np.frombuffer(os.urandom(8 * work.k), dtype=np.int64) >> 1 | 1
-    shift = 63 - max(1, (n // 16).bit_length())
+    factors = random_factors(6 * (work.d - 1))
+    shift = 62 - max(1, (n // 16).bit_length())
     key = np.empty(n, dtype=np.int64)
     corners, slots = work.t.corners.ravel(), work.slots.ravel()
     tables = (a["faces/vertex"], a["faces/wedge"], a["faces/vertex_offsets"])
     entry = np.empty(n, dtype=np.int64)
     mix = (mix_ridges, corners, *tables, slots, factors, key, shift, work.axes)
-    start = run.bucketed(n, 1 << (63 - shift), mix, (fill_keys, key, entry, shift))
+    start = run.bucketed(n, 1 << (62 - shift), mix, (fill_keys, key, entry, shift))
     if not any(run.split(any_repeat, len(start) - 1, start, entry)):
         return False
     # equal keys are equal ridges but for an accident

@@ -8,7 +8,6 @@ equal label sets; after that it is nothing special.
 
 from __future__ import annotations
 
-import os
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
@@ -17,7 +16,7 @@ from typing import TYPE_CHECKING, Any, NamedTuple
 import numpy as np
 
 from .errors import InputError, LimitError, TriangulationError
-from .kernels import Engine, engine
+from .kernels import Engine, engine, random_factors
 from .kernels.labels import bucket_sizes, fill_buckets, match_buckets, number_labels, sort_rows
 from .kernels.permutations import permutations_of
 
@@ -462,13 +461,13 @@ def _compact(corners: np.ndarray, run: Engine) -> tuple[np.ndarray, int]:
     if corners.size >= 2**31:
         raise LimitError(f"{len(corners)} simplices with labels up to {high} are more than this can number")
     points = np.empty(corners.shape, dtype=np.int32)
-    factors = np.frombuffer(os.urandom(16), dtype=np.int64) >> 2 | 1
+    factors = random_factors(6)
     progress = np.zeros(1, dtype=np.int64)
     bits = 12
     while True:
         keys = np.empty(1 << bits, dtype=np.int64)
         numbers = np.full(1 << bits, -1, dtype=np.int32)
-        if run(number_labels, corners.ravel(), factors, keys, numbers, 63 - bits, points.ravel(), progress):
+        if run(number_labels, corners.ravel(), factors, keys, numbers, 62 - bits, points.ravel(), progress):
             return points, int(progress[0])
         bits += 2
 

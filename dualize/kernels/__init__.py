@@ -22,7 +22,7 @@ from typing import Any
 
 import numpy as np
 
-__all__ = ["Engine", "engine", "mode", "thread_count"]
+__all__ = ["Engine", "engine", "mode", "random_factors", "thread_count"]
 
 # Below this many simplices interpreting is quicker than importing numba and loading compiled kernels
 # (about 0.5 s, against 0.08 ms a simplex).
@@ -128,6 +128,14 @@ def mode(kind: str) -> Iterator[None]:
         yield
     finally:
         _forced.pop()
+
+
+def random_factors(count: int) -> np.ndarray:
+    """Odd numbers of 31 bits from the system's source of randomness, int64: no input can foresee them.
+
+    What a kernel computes with them must not show in its result.
+    """
+    return np.frombuffer(os.urandom(4 * count), dtype=np.uint32).astype(np.int64) >> 1 | 1
 
 
 def thread_count(threads: int | None = None) -> int:

@@ -32,19 +32,25 @@ def sort_rows(labels, corners, written, axes, lo, hi):
 
 
 def number_labels(labels, factors, keys, numbers, shift, out, progress):
-    """Number the labels by first occurrence, with a table of a power of two of places, ``63 - shift`` bits.
+    """Number the labels by first occurrence, with a table of ``2 ** (62 - shift)`` places.
 
-    `numbers` must be -1 at the start; the two `factors` are drawn at random for each run, so that no choice
-    of labels collides on purpose.  Returns 1 when done, with the count in ``progress[0]``, and 0 when the
-    table is half full.
+    `numbers` must be -1 at the start; the six `factors` (odd, of 31 bits) are drawn at random for each run,
+    so that no choice of labels collides on purpose.  No product or sum exceeds 63 bits.  Returns 1 when
+    done, with the count in ``progress[0]``, and 0 when the table is half full.
     """
     last = len(keys) - 1
     count = 0
     for x in range(len(labels)):
         label = labels[x]
-        mixed = (label * factors[0]) & 0x7FFFFFFFFFFFFFFF
-        mixed = ((mixed ^ (mixed >> 31)) * factors[1]) & 0x7FFFFFFFFFFFFFFF
-        place = mixed >> shift
+        one = 0
+        two = 0
+        rest = label
+        for third in range(3):
+            piece = rest & 0x7FFFFFFF
+            one = (one + piece * factors[2 * third]) & 0x3FFFFFFFFFFFFFFF
+            two = (two + piece * factors[2 * third + 1]) & 0x3FFFFFFFFFFFFFFF
+            rest = rest >> 31
+        place = (one ^ ((two & 0x7FFFFFFF) << 31) ^ (two >> 31)) >> shift
         while numbers[place] >= 0 and keys[place] != label:
             place = (place + 1) & last
         if numbers[place] < 0:

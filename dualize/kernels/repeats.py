@@ -4,22 +4,30 @@ __all__ = ["any_repeat", "fill_keys", "mix_ridges"]
 
 
 def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, shift, axes, size, lo, hi):
-    """A 63-bit key of the ridge labels of each face, and how many each bucket ``key >> shift`` gets.
+    """A 62-bit key of the ridge labels of each face, and how many each bucket ``key >> shift`` gets.
 
-    The labels are read at the first passage of the face.  The `factors` are drawn at random for each run, so
-    no choice of labels makes different ridges collide on purpose; equal ridges always have equal keys.
+    The labels are read at the first passage of the face.  The `factors` (two for every third of every label,
+    odd, of 31 bits) are drawn at random for each run, so no choice of labels makes different ridges collide
+    on purpose; equal ridges always have equal keys.  No product or sum here exceeds 63 bits: compiled and
+    interpreted integers differ beyond.
     """
     k = len(axes)
     for f in range(lo, hi):
         s = vertex[offsets[f]]
         w = wedge[offsets[f]]
-        mixed = 0
-        rank = 0
+        one = 0
+        two = 0
+        x = 0
         for c in range(k):
             if c != slots[2 * w] and c != slots[2 * w + 1]:
-                mixed = ((mixed ^ corners[s * k + c]) * factors[rank]) & 0x7FFFFFFFFFFFFFFF
-                mixed ^= mixed >> 29
-                rank += 1
+                rest = corners[s * k + c]
+                for _ in range(3):
+                    piece = rest & 0x7FFFFFFF
+                    one = (one + piece * factors[x]) & 0x3FFFFFFFFFFFFFFF
+                    two = (two + piece * factors[x + 1]) & 0x3FFFFFFFFFFFFFFF
+                    rest = rest >> 31
+                    x += 2
+        mixed = one ^ ((two & 0x7FFFFFFF) << 31) ^ (two >> 31)
         key[f] = mixed
         size[mixed >> shift] += 1
     return 0

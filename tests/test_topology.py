@@ -10,7 +10,7 @@ from catalogue import CATALOGUE, F_OF_TWO_FOUR_SIMPLICES, NAMES, SMALL_GLUINGS
 from damage import triangulation
 from hypothesis import given
 from hypothesis import strategies as st
-from reference import table_from_pairs
+from reference import glue_by_labels, table_from_pairs
 from scipy.sparse import csc_array
 from specimens import (
     GLUED,
@@ -28,8 +28,9 @@ from specimens import (
 
 import dualize
 from dualize import Triangulation, kernels
+from dualize.kernels.permutations import permutations_of
 from dualize.topology import gudhi as bridge
-from dualize.topology.classes import census, classes, f_vector
+from dualize.topology.classes import census, classes, corner_subsets, f_vector
 from dualize.topology.gluing import gluing_of
 from dualize.topology.integral import abelian_group
 from dualize.topology.links import link_figures
@@ -120,6 +121,20 @@ def test_classes_are_the_same_compiled_and_interpreted(name):
         one, two = found
         for key in ("number", "turn", "irregular", "first"):
             assert np.array_equal(getattr(one, key), getattr(two, key))
+
+
+@pytest.mark.parametrize("name", ["cp2_9", "cell16", "rp3_x_i_22"])
+def test_classes_carry_corners_to_those_of_equal_label(name):
+    """In a scrambled complex the maps of corners are of every kind; labels tell what they should be."""
+    t = triangulation(scrambled(glue_by_labels(CATALOGUE[name].facets), 1))
+    for m in range(1, t.dimension + 1):
+        found, subsets = classes(t, m), corner_subsets(t.dimension, m)
+        assert not found.irregular.any()
+        labels = t.corners[:, subsets]  # (N, subsets, m)
+        simplex, subset = np.divmod(found.first[found.number], len(subsets))
+        there = labels[simplex, subset]
+        image = permutations_of(m - 1).image[found.turn].astype(np.int64)
+        assert np.array_equal(np.take_along_axis(there, image, axis=2), labels)
 
 
 @pytest.mark.parametrize("name", sorted(HOLONOMY))

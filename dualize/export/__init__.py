@@ -68,6 +68,10 @@ KINDS = {
         "the dual one- and two-skeleton as a VTK mesh (.vtk or .vtu)",
         "gluings except by number, the boundary graph, labels, further groups",
     ),
+    "einsum": Kind(
+        "the network of vertex tensors as JSON: einsum text, index arrays, an order, signs",
+        "the order of the cells around a face, the boundary graph, labels, coordinates, further groups",
+    ),
 }
 
 
@@ -86,10 +90,10 @@ def export(
     Parameters
     ----------
     skeleton : Skeleton
-    path : path, or ``"-"`` for standard output (graphs only)
+    path : path, or ``"-"`` for standard output (graphs and networks only)
         A directory for ``tables`` and ``matrices``, a file for the others.
     kind : str
-        ``tables``, ``matrices``, ``graphml``, ``node-link``, ``dot`` or ``vtk``.
+        ``tables``, ``matrices``, ``graphml``, ``node-link``, ``dot``, ``vtk`` or ``einsum``.
     force : bool
         Replace an existing file, or an existing directory that holds such an export and nothing else.
     graph : str
@@ -115,7 +119,7 @@ def export(
     ...     print(*sorted(os.listdir(folder + "/maps")))
     about.json d1.mtx d2.mtx
     """
-    from . import graphs, matrices, tables, vtk
+    from . import einsum, graphs, matrices, tables, vtk
     from .folder import write_folder
 
     name = os.fsdecode(path)
@@ -129,6 +133,8 @@ def export(
         write_folder(name, module.encode(skeleton), module.NAMES, force)
     elif kind == "vtk":
         _write_mesh(vtk.dual_mesh(skeleton, axes, projection), name, force)
+    elif kind == "einsum":
+        _write_lines(einsum.network_lines(skeleton), name, force)
     else:
         lines: dict[str, Callable[[Any], Iterator[bytes]]] = {
             "graphml": graphs.graphml_lines,

@@ -11,9 +11,9 @@ import numpy as np
 
 from ..errors import InputError, LimitError
 from ..progress import progress
-from .unbounded import growth
 from .parity import Sectors, parity_sectors
 from .rules import NO_BOUND, Rules
+from .unbounded import growth
 
 if TYPE_CHECKING:
     from scipy.sparse import csr_array

@@ -16,8 +16,8 @@ from ..errors import LimitError
 from ..skeleton import Skeleton
 from ..topology.integral import abelian_group
 from ..topology.maps import foam_maps
-from .unbounded import growth, growth_rays
 from .rules import Rules
+from .unbounded import growth, growth_rays
 
 __all__ = ["Estimate", "estimate", "interior_group", "interior_homology", "interior_rank", "omega"]
 

@@ -142,6 +142,7 @@ def build(
         flags=flags,
         arrays=_in_layout_order(tables, ids),
         corner_names=t.corner_names,
+        extra={} if t.refined_from is None else {"refined_from/simplex": t.refined_from},
     )
 
 

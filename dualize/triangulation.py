@@ -27,6 +27,7 @@ if TYPE_CHECKING:
 
 __all__ = ["Coordinates", "Triangulation"]
 
+TABLES = ("across", "rank", "written", "corners", "refined_from")
 SHOWN = 10  # offenders of one kind that an error names
 
 
@@ -72,6 +73,9 @@ class Triangulation:
         Whether the gluings were found by matching labels, so that a set of labels names one simplex.
     coloured : bool
         Whether it was given as a coloured graph: corner `c` has colour `c`, and every gluing keeps colours.
+    refined_from : ndarray of int64, shape (N,), or None
+        In a refinement the simplex of the coarser triangulation in which each one lies, -1 where in none; the
+        skeleton carries it as the group `refined_from/simplex`.
     """
 
     across: np.ndarray
@@ -82,9 +86,10 @@ class Triangulation:
     coordinates: Coordinates | None = None
     matched: bool = False
     coloured: bool = False
+    refined_from: np.ndarray | None = None
 
     def __post_init__(self) -> None:
-        for name in ("across", "rank", "written", "corners"):
+        for name in TABLES:
             array = getattr(self, name)
             if array is not None:
                 view = np.ascontiguousarray(array).view()
@@ -358,7 +363,7 @@ class Triangulation:
         if not isinstance(other, Triangulation):
             return NotImplemented
         mine, theirs = self.coordinates or Coordinates(), other.coordinates or Coordinates()
-        pairs = [(getattr(self, x), getattr(other, x)) for x in ("across", "rank", "written", "corners")]
+        pairs = [(getattr(self, x), getattr(other, x)) for x in TABLES]
         pairs += list(zip(mine, theirs, strict=True))
         mine_meant = (self.corner_names, self.matched, self.coloured)
         return mine_meant == (other.corner_names, other.matched, other.coloured) and all(
@@ -375,6 +380,12 @@ class Triangulation:
             f"<Triangulation {self.dimension}D: {len(self)} simplices, {kind}, "
             f"{free} boundary facet{'' if free == 1 else 's'}>"
         )
+
+    def _repr_html_(self) -> str:
+        """A small table, for notebooks."""
+        from .draw.notebook import triangulation_table
+
+        return triangulation_table(self)
 
     def write(self, path: str | PathLike[str], *, force: bool = False, kind: str | None = None) -> None:
         """Write the triangulation as a file; see `dualize.formats.write`."""
@@ -708,7 +719,9 @@ def _checked_coordinates(given: Any, n: int, k: int, labels: np.ndarray | None) 
             )
     if chart is not None:
         if chart.ndim != 3 or chart.shape[:2] != (n, k):
-            raise InputError(f"corner charts have the shape {chart.shape}, not {(n, k, 'axes')}")
+            raise InputError(
+                f"corner charts have the shape {chart.shape}, not {(n, k, 'axes')}", "coordinates/corner"
+            )
         axes = chart.shape[2]
     if period is not None and (period.shape != (axes,) or (period < 0).any()):
         raise InputError(

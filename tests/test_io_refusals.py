@@ -270,7 +270,7 @@ FACETS = {
     ),
     "charts-of-other-number": (
         {"across": [[-1] * 3], "carry": [[[0, 1, 2]] * 3], "coordinates": {"corner": [[[0.0]] * 4]}},
-        "corner coordinates have the shape",
+        "corner charts have the shape",
         "coordinates/corner",
     ),
     "names-out-of-order": (

@@ -203,7 +203,9 @@ def test_prose_lists_every_table_with_its_shape():
     text = prose()
     rows = dict(re.findall(r"^\| `(\w+/\w+)` \| \(([^)]*)\) \|", text, flags=re.MULTILINE))
     assert {
-        name: tuple(x.strip() for x in shape.split(",") if x.strip()) for name, shape in rows.items()
+        name: tuple(x.strip() for x in shape.split(",") if x.strip())
+        for name, shape in rows.items()
+        if name in TABLES
     } == {name: tuple(map(str, t.shape)) for name, t in TABLES.items()}
     assert "<!--" not in text
 

@@ -46,8 +46,12 @@ class Changed:
         """The foam skeleton of the result, with `refined_from` as a further group; see `dualize.build`."""
         from ..build import build
 
-        skeleton = build(self.triangulation, **settings)
-        return replace(skeleton, extra={**skeleton.extra, "refined_from/simplex": self.refined_from})
+        return build(self.refinement, **settings)
+
+    @property
+    def refinement(self) -> Triangulation:
+        """The triangulation with `refined_from` in it, so that files and skeletons carry it."""
+        return replace(self.triangulation, refined_from=self.refined_from)
 
     def __repr__(self) -> str:
         parts = [repr(self.triangulation)]

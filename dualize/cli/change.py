@@ -137,6 +137,10 @@ def _tell(result: Any, before: int) -> None:
         note(f"note: {line}")
 
 
+# changes whose files carry which simplex of the input each new one lies in
+REFINEMENTS = ("stellar", "derived", "refine")
+
+
 def _change(name: str, *, records: bool = False) -> Callable[[Callable[..., Any]], click.Command]:
     """Make a function from a triangulation and parameters to a `Changed` a command of the group."""
 
@@ -155,7 +159,8 @@ def _change(name: str, *, records: bool = False) -> Callable[[Callable[..., Any]
             result = function(t, **arguments)
             if record is not None and result.moves is None:
                 raise InputError("this change makes no moves to record")
-            _write(result.triangulation, ctx.obj["path"], output, to_kind, force)
+            outcome = result.refinement if name in REFINEMENTS else result.triangulation
+            _write(outcome, ctx.obj["path"], output, to_kind, force)
             if record is not None:
                 _save(record, result.moves.to_dict(), force)
             if origin is not None:

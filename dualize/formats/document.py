@@ -16,6 +16,7 @@ Arrays may come as nested lists; nothing that comes in is trusted.
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
+from dataclasses import replace
 from itertools import chain, pairwise
 from typing import Any
 
@@ -52,6 +53,7 @@ TRIANGULATION_ENTRIES = (
     "coordinates",
     "matched",
     "coloured",
+    "refined_from",
 )
 
 # what a gluing table may say of itself; `Triangulation` checks it
@@ -356,6 +358,8 @@ def triangulation_document(t: Triangulation, gluing: bool = False) -> dict[str, 
     for name, array in (("point", coordinates.point), ("corner", chart), ("period", coordinates.period)):
         if array is not None:
             document[f"coordinates/{name}"] = array
+    if t.refined_from is not None:
+        document["refined_from/simplex"] = t.refined_from
     return document
 
 
@@ -373,7 +377,8 @@ def triangulation_of(
         more = f" and {len(unread) - 8} more" if len(unread) > 8 else ""
         notes(f"ignored {', '.join(unread[:8])}{more}: no entries of a triangulation")
     if "across" in document:
-        return _gluings(document), "gluing table" if "carry" in document else "labels and neighbours"
+        t = _with_origin(_gluings(document), document)
+        return t, "gluing table" if "carry" in document else "labels and neighbours"
     if "facets" not in document:
         known = ", ".join(list(document)[:8]) or "nothing"
         raise InputError(
@@ -383,7 +388,23 @@ def triangulation_of(
     labels, names = _labels(document["facets"], "facets", document.get("corner_names"))
     coordinates = _coordinates(document, labels, names)
     content = Triangulation.from_facets(labels, coordinates=coordinates, corner_names=names, threads=threads)
+    content = _with_origin(content, document)
     return content, "facets, labels are " + ("integers" if names is None else "words")
+
+
+def _with_origin(t: Triangulation, document: Mapping[str, Any]) -> Triangulation:
+    """With the simplices of the coarser triangulation that the document names."""
+    name = "refined_from/simplex"
+    nested = document.get("refined_from")
+    given = nested.get("simplex") if isinstance(nested, dict) else document.get(name)
+    if given is None:
+        return t
+    origin = table_of(given, name)
+    if origin.shape != (len(t),) or origin.dtype.kind not in "iu" or (origin < -1).any():
+        raise InputError(
+            f"it is no list of {len(t)} simplex numbers", name, "give one for each simplex, -1 for none"
+        )
+    return replace(t, refined_from=origin.astype(np.int64))
 
 
 def _gluings(document: Mapping[str, Any]) -> Triangulation:

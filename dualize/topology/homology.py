@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -139,7 +139,8 @@ def small_maps(paired: Paired) -> list[list[dict[int, int]]]:
 def _flow_of_any_size(table: tuple, total: int, cell: int) -> tuple[list[int], list[int]]:
     """`flow_down` in integers of any size."""
     cells, values = [0] * total, [0] * total
-    count = flow_down(*(x.tolist() for x in table), [0] * total, cells, values, cell, float("inf"))
+    arguments: list[Any] = [*(x.tolist() for x in table), [0] * total, cells, values, cell, float("inf")]
+    count = flow_down(*arguments)
     return cells[:count], values[:count]
 
 

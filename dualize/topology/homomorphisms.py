@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Sequence
 from functools import cache
+from itertools import pairwise
 from typing import NamedTuple
 
 import numpy as np
@@ -85,7 +86,9 @@ def finite_group(name: str) -> FiniteGroup:
         inverse = [7, *(-pow(x, -1, 7) % 7 for x in range(1, 7)), 0]
         shift, double = [*range(1, 7), 0, 7], [*(2 * x % 7 for x in range(7)), 7]
         return group_of_permutations([shift, double, inverse], name)
-    raise InputError(f"there is no group {name!r}", hint="groups: Z2, Z3, ..., S3 to S6, A3 to A6, Q8, PSL(2,7)")
+    raise InputError(
+        f"there is no group {name!r}", hint="groups: Z2, Z3, ..., S3 to S6, A3 to A6, Q8, PSL(2,7)"
+    )
 
 
 def _three_cycle(n: int, c: int) -> list[int]:
@@ -94,9 +97,7 @@ def _three_cycle(n: int, c: int) -> list[int]:
     return images
 
 
-def count_homomorphisms(
-    presentation: Presentation, group: FiniteGroup | str, *, steps: int = STEPS
-) -> int:
+def count_homomorphisms(presentation: Presentation, group: FiniteGroup | str, *, steps: int = STEPS) -> int:
     """How many homomorphisms there are from a presented group to a finite one.
 
     Parameters
@@ -143,7 +144,7 @@ def _parts(p: Presentation) -> list[tuple[list[int], list[tuple[int, ...]]]]:
         return x
 
     for r in p.relators:
-        for x, y in zip(r, r[1:], strict=False):
+        for x, y in pairwise(r):
             root[find(abs(x))] = find(abs(y))
     parts: dict[int, tuple[list[int], list[tuple[int, ...]]]] = {}
     for x in range(1, p.generators + 1):

@@ -152,7 +152,8 @@ def left_kernel(matrix: Sequence[Sequence[int]]) -> tuple[list[list[int]], list[
     m = len(matrix[0])
     unit = [[int(x == y) for y in range(n)] for x in range(n)]
     form = fmpz_mat([[*map(int, row), *line] for row, line in zip(matrix, unit, strict=True)]).hnf().tolist()
-    kernel, rest = [], []
+    kernel: list[list[int]] = []
+    rest: list[list[int]] = []
     for row in form:
         line = [int(e) for e in row]
         (rest if any(line[:m]) else kernel).append(line[m:])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -165,7 +166,7 @@ def _form(t: Triangulation, orientation: np.ndarray, threads: int | None) -> Int
 def _variations(signs: list[int]) -> int:
     """How often the sign changes along a list, zeros left out."""
     there = [s for s in signs if s]
-    return sum(a != b for a, b in zip(there, there[1:], strict=False))
+    return sum(a != b for a, b in pairwise(there))
 
 
 def _pull_back(paired: Paired) -> np.ndarray:

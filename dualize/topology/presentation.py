@@ -1,4 +1,4 @@
-"""Finitely presented groups: Tietze transformations that make a presentation short, and what it abelianises to.
+"""Finitely presented groups: Tietze transformations that make them short, and what they abelianise to.
 
 Words are lists of generators 1, 2, ...; negative numbers are inverses.
 """

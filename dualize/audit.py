@@ -97,6 +97,12 @@ class Report:
     def __iter__(self) -> Iterator[Finding]:
         return iter(self.findings)
 
+    def _repr_html_(self) -> str:
+        """A small table, for notebooks."""
+        from .draw.notebook import report_table
+
+        return report_table(self)
+
     def fails(self, require: Iterable[str] = ()) -> list[Finding]:
         """The violated identities, and those findings named in `require` that do not hold.
 

@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from os import PathLike
 
     import networkx
+    from matplotlib.figure import Figure
 
 __all__ = ["Group", "Skeleton"]
 
@@ -310,6 +311,38 @@ class Skeleton:
         from .formats import write
 
         write(self, path, force=force, kind=kind, compress=compress)
+
+    # -- pictures ----------------------------------------------------------------------------------
+
+    def draw(self, part: str | None = None, **options: Any) -> Figure:
+        """A picture of a part of the foam as a matplotlib figure.
+
+        Parameters
+        ----------
+        part : str, optional
+            ``boundary``, ``dual``, ``vertex``, ``face``, ``degrees`` or ``space``; by default the boundary
+            graph, or the dual graph where there is no boundary.
+        **options
+            ``number``, ``most``, ``component``, ``axes``, ``projection``, ``view``: see `dualize.draw.sketch`.
+
+        Returns
+        -------
+        matplotlib.figure.Figure
+
+        Raises
+        ------
+        InputError
+            If the part, an option or a cell does not exist, or there are no coordinates to draw in space.
+        """
+        from .draw import picture
+
+        return picture(self, part, **options)
+
+    def _repr_html_(self) -> str:
+        """A small table, for notebooks."""
+        from .draw.notebook import skeleton_table
+
+        return skeleton_table(self)
 
 
 def graph_link(skeleton: Skeleton, link: int) -> tuple[int, int, int]:

@@ -14,9 +14,9 @@ ROOMS = re.findall(r"^\| `(\w+)` \|", TEXT, re.M)
 FRAME = {"__init__", "__main__"}
 # functions that are only another way to call a room below
 LENT = {
-    "audit": {"findings"},
-    "triangulation": {"boundary", "coloured", "formats"},
-    "skeleton": {"check", "formats"},
+    "audit": {"draw", "findings"},
+    "triangulation": {"boundary", "coloured", "draw", "formats"},
+    "skeleton": {"check", "draw", "formats"},
 }
 
 

@@ -31,6 +31,7 @@ __all__ = [
     "input_options",
     "json_option",
     "note",
+    "open_foam",
     "open_input",
     "output_options",
     "quiet_option",
@@ -205,6 +206,31 @@ def open_input(
 
     with progress(f"reading {os.path.basename(path)}"):
         return open_any(path, kind=from_kind, dataset=dataset, threads=threads, notes=_noted)
+
+
+def open_foam(
+    path: str, *, from_kind: str | None = None, dataset: str | None = None, threads: int | None = None
+) -> tuple[Opened, Skeleton]:
+    """A file that is to be shown, and its skeleton: of a triangulation it is built, with points and segments.
+
+    Singular ridges are kept, as nothing is computed from what is only looked at.
+
+    Raises
+    ------
+    DualizeError
+    """
+    from dataclasses import replace
+
+    from ..build import build
+    from ..progress import progress
+    from ..skeleton import Skeleton
+
+    given = open_input(path, from_kind=from_kind, dataset=dataset, threads=threads)
+    if isinstance(given.content, Skeleton):
+        return given, given.content
+    with progress("building"):
+        foam = build(given.content, keep_singular=True, points=True, threads=threads)
+    return given, replace(foam, provenance=given.provenance())
 
 
 def write_output(

@@ -19,6 +19,7 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from .common import Changed
     from .contraction import contract, contract_all, contractible
+    from .cover import double_cover
     from .cutting import cut
     from .gluing import glue, glue_facets, union
     from .moves import move, places
@@ -43,6 +44,7 @@ _HOMES = {
     "cut": "cutting",
     "derived": "subdivide",
     "detach": "shell",
+    "double_cover": "cover",
     "glue": "gluing",
     "glue_facets": "gluing",
     "keep": "parts",
@@ -74,6 +76,7 @@ __all__ = [
     "cut",
     "derived",
     "detach",
+    "double_cover",
     "glue",
     "glue_facets",
     "keep",

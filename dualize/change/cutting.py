@@ -15,7 +15,7 @@ from .common import Changed, fresh_labels, fresh_words, label_numbers, number, r
 from .joints import Charts, charts_and_points, finished
 from .tables import orientations
 
-__all__ = ["cut"]
+__all__ = ["cut", "split_labels"]
 
 
 def cut(triangulation: Triangulation, facets: Sequence[Any]) -> Changed:
@@ -56,14 +56,14 @@ def cut(triangulation: Triangulation, facets: Sequence[Any]) -> Changed:
     fresh: list = []
     if is_labelled:
         assert t.corners is not None
-        labels, words, chart, fresh = _split(t, table, chart)
+        labels, words, chart, fresh = split_labels(t, table, chart)
     result = finished(table, labels, words, chart, np.arange(len(t)), [], orientations(t)[0])
     if result.triangulation.corners is not None:
         result = Changed(result.triangulation, result.refined_from, fresh, result.notes)
     return result
 
 
-def _split(
+def split_labels(
     t: Triangulation, table: Triangulation, chart: Charts
 ) -> tuple[np.ndarray, list[str] | None, Charts, list]:
     """Labels by the classes of points of a table that was cut out of `t`."""

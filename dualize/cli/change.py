@@ -551,3 +551,12 @@ def reverse(t: Any) -> Any:
     from .. import change
 
     return change.reverse(t)
+
+
+@_change("double-cover")
+@_options()
+def double_cover(t: Any) -> Any:
+    """The orientable double cover of a complex that is not orientable."""
+    from .. import change
+
+    return change.double_cover(t)

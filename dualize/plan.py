@@ -240,7 +240,7 @@ def _power(skeleton: Skeleton, flat: Rules, power: float, slot: int) -> tuple[Ga
             "edges": guess.edges,
         },
     }
-    return gauge(skeleton, slot=slot), out
+    return gauge(skeleton, slot=slot, rank=inner - omega), out
 
 
 def _sectors(rules: Rules, exact: bool, document: dict[str, Any]) -> tuple[Sectors, Bounds]:

@@ -311,16 +311,19 @@ def _infeasible(rules: Rules) -> Contradiction | None:
     top = float(result.x.max())
     parts = [Fraction(float(y) / top).limit_denominator(1000) for y in result.x]
     scale = lcm(*(p.denominator for p in parts))
-    whole = np.array([int(p * scale) for p in parts], dtype=object)
-    dense = matrix.T.astype(object) @ whole if matrix.nnz else np.zeros(0)
-    if (np.asarray(dense) < 0).any() or int((whole * right).sum()) >= 0:
+    whole = [int(p * scale) for p in parts]
+    slope = [0] * rules.internal
+    entries = matrix.tocoo()
+    for x, f, value in zip(*(c.tolist() for c in entries.coords), entries.data.tolist(), strict=True):
+        slope[f] += whole[x] * value
+    if min(slope, default=0) < 0 or sum(y * b for y, b in zip(whole, right.tolist(), strict=True)) >= 0:
         return Contradiction("inequalities")
     taken = [x for x, y in enumerate(whole) if y]
     return Contradiction(
         "inequalities",
         tuple(names[x][0] for x in taken),
         tuple(names[x][1] for x in taken),
-        tuple(int(whole[x]) for x in taken),
+        tuple(whole[x] for x in taken),
     )
 
 

@@ -52,7 +52,7 @@ class Gauge:
         }
 
 
-def gauge(skeleton: Skeleton, *, slot: int = 0) -> Gauge:
+def gauge(skeleton: Skeleton, *, slot: int = 0, rank: int | None = None) -> Gauge:
     """A choice of what to hold fixed in a sum.
 
     Parameters
@@ -60,6 +60,8 @@ def gauge(skeleton: Skeleton, *, slot: int = 0) -> Gauge:
     skeleton : Skeleton
     slot : int
         The redundant slot of every vertex; one for all, so that equal vertices stay equal.
+    rank : int, optional
+        Rank over Q of the boundary map from internal faces to internal edges, where it is known already.
 
     Notes
     -----
@@ -79,7 +81,7 @@ def gauge(skeleton: Skeleton, *, slot: int = 0) -> Gauge:
     if skeleton.dimension == 3:
         faces, how = _dual_tree(skeleton), "tree"
     else:
-        faces, how = _spare_columns(skeleton), "rank"
+        faces, how = _spare_columns(skeleton, rank), "rank"
     vertices = len(skeleton["vertices/orientation"])
     return Gauge(edges, faces, how, np.full(vertices, slot, dtype=np.int8))
 
@@ -128,14 +130,14 @@ def _dual_tree(skeleton: Skeleton) -> np.ndarray:
     return _forest(ends, found.count + skeleton.counts["components"])
 
 
-def _spare_columns(skeleton: Skeleton) -> np.ndarray:
+def _spare_columns(skeleton: Skeleton, rank: int | None) -> np.ndarray:
     """Omega internal faces without which the boundary map keeps its rank over Q.
 
     Columns that are independent modulo a prime are independent over Q; with as many of them as the exact
     rank, the rest may go.
     """
     matrix = interior_map(skeleton)
-    rank = interior_rank(skeleton)
+    rank = interior_rank(skeleton) if rank is None else rank
     for prime in PRIMES:
         kept = _independent(matrix, prime)
         if len(kept) == rank:

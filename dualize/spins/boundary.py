@@ -86,7 +86,7 @@ class BoundaryData:
         turned = (found.link_sign < 0)[links] if len(links) else np.zeros(links.shape, dtype=bool)
         odd = int(self.spins[links][turned & against].sum()) if len(links) else 0
         against = against ^ turned
-        flipped = found.node_sign < 0
+        flipped = old["nodes/orientation"] != new["nodes/orientation"][found.nodes]
         odd += int(self.spins[links[flipped]][against[flipped]].sum()) if len(links) else 0
         states = {}
         for n, state in self.states.items():

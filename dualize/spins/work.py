@@ -11,6 +11,7 @@ import numpy as np
 from ..errors import InputError, LimitError
 from ..layout import wedge_pairs
 from ..skeleton import Skeleton
+from .recoupling import overlap
 from .rules import intertwiner_dimension
 
 __all__ = ["HalfEdges", "WorkList", "half_edges", "leg_corners", "work_list"]
@@ -28,6 +29,7 @@ class WorkList:
         Twice-spins at the wedges (i, j), in their order.
     order : ndarray of int8, shape (n, D + 1, D)
         The corner at each leg of each slot: leg k of slot i goes through wedge {i, order[i, k]}.
+        Ascending where symmetries are used.
     direction : ndarray of int8, shape (n, W), or None
         Of the faces at the wedges, +1 from i to j; None where they are reduced to signs.
     leaves : ndarray of int8, shape (n, D + 1), or None
@@ -40,6 +42,10 @@ class WorkList:
         The number of the symmetry that carries the vertex to its entry; 0 is the identity.
     dimensions : ndarray of int64, shape (n, D + 1)
         Intertwiners at each slot of each entry.
+    legs : ndarray of int8, shape (V, D + 1, D)
+        The corner at each leg of each slot of the vertices of the foam.
+    group : list of tuple of int
+        The symmetries by their numbers, as permutations of the slots.
     """
 
     spins: np.ndarray
@@ -50,6 +56,8 @@ class WorkList:
     odd: np.ndarray
     symmetry: np.ndarray
     dimensions: np.ndarray
+    legs: np.ndarray
+    group: list[tuple[int, ...]]
 
     def __len__(self) -> int:
         return len(self.spins)
@@ -63,6 +71,38 @@ class WorkList:
     def bytes(self) -> int:
         """Bytes of all tensors in double precision."""
         return 8 * self.elements
+
+    def carry(self, labelling: int, vertex: int, tensor: np.ndarray) -> np.ndarray:
+        """The amplitude of a vertex in a labelling from the tensor of its entry.
+
+        Parameters
+        ----------
+        labelling, vertex : int
+        tensor : ndarray, one axis for each slot of the entry
+            With directions reduced to signs: legs in the order `order`, an epsilon from i to j at every
+            wedge (i, j).
+
+        Returns
+        -------
+        ndarray, one axis for each slot of the vertex
+            Legs in the order of the places.
+        """
+        if self.direction is not None:
+            return tensor
+        entry = int(self.entry[labelling, vertex])
+        g = self.group[int(self.symmetry[labelling, vertex])]
+        out = np.transpose(tensor, g)
+        wedge = _wedge_table(len(g) - 1)
+        for slot, row in enumerate(self.legs[vertex].tolist()):
+            renamed = [g[c] for c in row]
+            theirs = self.order[entry, g[slot]].tolist()
+            at = [renamed.index(c) for c in theirs]
+            if at != list(range(len(row))):
+                spins = [int(self.spins[entry, wedge[g[slot], c]]) for c in renamed]
+                matrix = overlap(spins, range(len(row)), at)
+                out = np.moveaxis(np.tensordot(matrix, out, axes=(1, slot)), 0, slot)
+        result: np.ndarray = -out if self.odd[labelling, vertex] else out
+        return result
 
     def __str__(self) -> str:
         return f"{len(self):,} vertex amplitudes, {self.elements:,} tensor elements, {self.bytes:,} bytes"
@@ -97,9 +137,9 @@ def work_list(
         at every wedge, a face that passes from j to i costs (-1)**(2j).  If false, directions and leaves
         stay in the key.
     symmetries : sequence of permutations of the slots
-        Amplitudes that differ by these, or their products, are counted once; `symmetry` says which
-        permutation (its number in the order of their generation, see `slot_group`) was used.  What the
-        permutation does to the entries, signs and changes of basis, is up to the table that has it.
+        Amplitudes that differ by these, or their products, are counted once, and `WorkList.symmetry` says
+        which one was used.  Any permutation is one of SU(2), up to the order of the legs: entries then have
+        ascending legs, and `WorkList.carry` changes the basis.
 
     Raises
     ------
@@ -116,15 +156,7 @@ def work_list(
     '2 vertex amplitudes, 40 tensor elements, 320 bytes'
     """
     d, k = skeleton.dimension, skeleton.dimension + 1
-    rows = np.asarray(labellings, dtype=np.int64)
-    outer = np.asarray(boundary, dtype=np.int64)
-    if rows.ndim != 2 or rows.shape[1] != skeleton.counts["faces_internal"]:
-        raise InputError(
-            f"labellings have a row for each and {skeleton.counts['faces_internal']} columns, "
-            f"not the shape {rows.shape}"
-        )
-    if outer.shape != (skeleton.counts["links"],):
-        raise InputError(f"there are {skeleton.counts['links']} links, and {outer.size} boundary spins")
+    rows, spins = _all_spins(skeleton, labellings, boundary)
     vertices, w = skeleton["wedges/face"].shape
     group = slot_group(d, symmetries)
     legs = leg_corners(skeleton)
@@ -135,10 +167,11 @@ def work_list(
             f"the keys of {len(rows) * vertices:,} vertices take {need / 2**30:.1f} GiB",
             hint="hand over fewer labellings at a time",
         )
-    spins = np.concatenate([rows, np.broadcast_to(outer, (len(rows), len(outer)))], axis=1)
     at = spins[:, skeleton["wedges/face"]].reshape(-1, w)
     direction = np.tile(skeleton["wedges/direction"], (len(rows), 1)).astype(np.int64)
-    order = np.tile(legs.reshape(vertices, k * d), (len(rows), 1)).astype(np.int64)
+    # a symmetry changes the order of the legs: entries then have ascending ones
+    fixed = np.broadcast_to(_ascending(k), legs.shape) if len(group) > 1 else legs
+    order = np.tile(fixed.reshape(vertices, k * d), (len(rows), 1)).astype(np.int64)
     odd = (np.where(direction < 0, at, 0).sum(axis=1) % 2).astype(np.int8)
     parts = [at, order]
     if not signs:
@@ -170,7 +203,30 @@ def work_list(
         odd=odd.reshape(shape),
         symmetry=used.reshape(shape),
         dimensions=intertwiner_dimension(at_legs),
+        legs=legs,
+        group=group,
     )
+
+
+def _all_spins(
+    skeleton: Skeleton, labellings: np.ndarray, boundary: np.ndarray
+) -> tuple[np.ndarray, np.ndarray]:
+    """Labellings, and the twice-spins of all faces in each, checked against the foam."""
+    rows = np.asarray(labellings, dtype=np.int64)
+    outer = np.asarray(boundary, dtype=np.int64)
+    if rows.ndim != 2 or rows.shape[1] != skeleton.counts["faces_internal"]:
+        raise InputError(
+            f"labellings have a row for each and {skeleton.counts['faces_internal']} columns, "
+            f"not the shape {rows.shape}"
+        )
+    if outer.shape != (skeleton.counts["links"],):
+        raise InputError(f"there are {skeleton.counts['links']} links, and {outer.size} boundary spins")
+    return rows, np.concatenate([rows, np.broadcast_to(outer, (len(rows), len(outer)))], axis=1)
+
+
+def _ascending(k: int) -> np.ndarray:
+    """The other corners of each slot, ascending, (K, K - 1)."""
+    return np.array([[c for c in range(k) if c != slot] for slot in range(k)], dtype=np.int8)
 
 
 def odd_of(spins: np.ndarray, direction: np.ndarray) -> np.ndarray:
@@ -209,13 +265,12 @@ def _wedge_table(dimension: int) -> np.ndarray:
 
 
 def _permuted(key: np.ndarray, g: tuple[int, ...], d: int, signs: bool) -> tuple[np.ndarray, np.ndarray]:
-    """Keys with slot i renamed g[i], and the parity of twice-spins whose wedge is turned around."""
+    """Keys with slot i renamed g[i] (legs stay ascending), and the sum of twice-spins of turned wedges."""
     pairs = wedge_pairs(d)
     k, w = d + 1, len(pairs)
     table = _wedge_table(d)
     image = key.copy()
     flips = np.zeros(len(key), dtype=np.int64)
-    renamed = np.array(g)
     for n, (i, j) in enumerate(pairs):
         to = table[g[i], g[j]]
         image[:, to] = key[:, n]
@@ -224,11 +279,6 @@ def _permuted(key: np.ndarray, g: tuple[int, ...], d: int, signs: bool) -> tuple
             flips += key[:, n]
         if not signs:
             image[:, w + k * d + to] = -key[:, w + k * d + n] if turned else key[:, w + k * d + n]
-    order = key[:, w : w + k * d].reshape(-1, k, d)
-    new = image[:, w : w + k * d].reshape(-1, k, d)
-    for i in range(k):
-        new[:, g[i]] = renamed[order[:, i]]
-    image[:, w : w + k * d] = new.reshape(-1, k * d)
     if not signs:
         base = 2 * w + k * d
         for i in range(k):
@@ -337,11 +387,9 @@ def half_edges(
     vertex, at = np.nonzero(np.arange(5)[None, :] != chosen[:, None])
     legs = leg_corners(skeleton)[vertex, at].astype(np.int64)
     held = (legs == chosen[vertex][:, None]).argmax(axis=1)
-    rows = np.asarray(labellings, dtype=np.int64).reshape(-1, skeleton.counts["faces_internal"])
-    outer = np.broadcast_to(np.asarray(boundary, dtype=np.int64), (len(rows), skeleton.counts["links"]))
-    spins = np.concatenate([rows, outer], axis=1)[
-        :, skeleton["wedges/face"][vertex[:, None], table[at[:, None], legs]]
-    ]
+    rows, every = _all_spins(skeleton, labellings, boundary)
+    faces = skeleton["wedges/face"][vertex[:, None], table[at[:, None], legs]]
+    spins = every[:, faces]
     key = np.concatenate([spins, np.broadcast_to(held[None, :, None], (*spins.shape[:2], 1))], axis=2)
     unique, inverse = np.unique(key.reshape(-1, 5), axis=0, return_inverse=True)
     coefficients, elements = 0, 0

@@ -81,5 +81,5 @@ def check_memory(simplices: int, boundary: int, dimension: int, labels: bool) ->
         raise LimitError(
             f"building {simplices:,} simplices takes about {need / 2**30:.1f} GiB, "
             f"and {free / 2**30:.1f} GiB are free",
-            hint="take a larger machine, or try all the same: --any-size, any_size=True",
+            hint="take a larger machine, or try all the same: dualize build --any-size, any_size=True",
         )

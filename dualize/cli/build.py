@@ -8,6 +8,7 @@ import click
 
 from ..build import build
 from ..errors import InputError
+from ..formats.target import check_target
 from ..progress import progress
 from ..skeleton import Skeleton
 from .common import (
@@ -35,6 +36,7 @@ __all__ = ["command", "summary"]
 @output_options(metavar="FOAM")
 @click.option("--keep-singular", is_flag=True, help="Build also where a ridge is singular, and record it.")
 @click.option("--points", is_flag=True, help="Add the triangulation's own vertices and 1-simplices.")
+@click.option("--any-size", is_flag=True, help="Begin even if there does not seem to be enough memory.")
 @click.option("--compress", is_flag=True, help="Compress the arrays of an HDF5 or NPZ file.")
 @threads_option
 @quiet_option
@@ -47,6 +49,7 @@ def command(
     force: bool,
     keep_singular: bool,
     points: bool,
+    any_size: bool,
     compress: bool,
     threads: int | None,
 ) -> None:
@@ -56,13 +59,17 @@ def command(
     input. FOAM is written as JSON, HDF5 or NPZ by its suffix; - is standard output, as JSON. A summary goes
     to standard error.
     """
+    if output != "-":
+        check_target(output, force)
     given = open_input(path, from_kind=from_kind, dataset=dataset, threads=threads)
     if isinstance(given.content, Skeleton):
         raise InputError(
             "this is a skeleton already", path, "give the triangulation; dualize describe tells more"
         )
     with progress("building"):
-        skeleton = build(given.content, keep_singular=keep_singular, points=points, threads=threads)
+        skeleton = build(
+            given.content, keep_singular=keep_singular, points=points, any_size=any_size, threads=threads
+        )
     write_output(
         replace(skeleton, provenance=given.provenance()),
         output,

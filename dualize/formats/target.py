@@ -11,7 +11,7 @@ from typing import IO, NamedTuple
 
 from ..errors import InputError
 
-__all__ = ["Target", "replacing"]
+__all__ = ["Target", "check_target", "replacing"]
 
 FULL = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG)
 
@@ -51,7 +51,7 @@ def replacing(path: str, force: bool) -> Iterator[tuple[IO[bytes], str | None]]:
         If the file exists and `force` is false, or it cannot be written.
     """
     try:
-        _check_target(path, force)
+        check_target(path, force)
         if _special(path):
             with open(path, "wb") as stream:
                 yield stream, None
@@ -68,7 +68,7 @@ def replacing(path: str, force: bool) -> Iterator[tuple[IO[bytes], str | None]]:
                 os.fsync(stream.fileno())
                 with suppress(OSError):
                     os.chmod(temporary, stat.S_IMODE(os.stat(real).st_mode))
-            _check_target(path, force)
+            check_target(path, force)
             os.replace(temporary, real)
         except BaseException:
             with suppress(OSError):
@@ -85,7 +85,13 @@ def replacing(path: str, force: bool) -> Iterator[tuple[IO[bytes], str | None]]:
         raise InputError("no file can have this name", repr(path)) from None
 
 
-def _check_target(path: str, force: bool) -> None:
+def check_target(path: str, force: bool) -> None:
+    """Refuse a path that `replacing` would refuse; to be asked before long work.
+
+    Raises
+    ------
+    InputError
+    """
     if os.path.isdir(path):
         raise InputError("this is a directory, not a file", path, "name a file in it")
     if os.path.lexists(path) and not force and not _special(path):

@@ -6,14 +6,13 @@ import sys
 import pytest
 from commandline import dualize as run
 from commandline import refused
-from specimens import kuhn_torus
 
 import dualize
 from dualize import LimitError, memory
 
 
 def test_a_build_that_does_not_fit_is_refused_with_figures(monkeypatch):
-    t = dualize.Triangulation.from_facets(kuhn_torus((3, 3, 3)))
+    t = dualize.make.lattice(3, 3, 3, periodic="xyz")
     monkeypatch.setattr(sys.modules["dualize.build"], "WEIGHED_FROM", 1)
     monkeypatch.setattr(memory, "available_memory", lambda: 1000)
     with pytest.raises(LimitError, match=r"building 162 simplices takes about .* GiB, and 0\.0 GiB are free"):

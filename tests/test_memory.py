@@ -2,6 +2,7 @@
 
 import subprocess
 import sys
+from importlib import import_module
 
 import pytest
 from commandline import dualize as run
@@ -13,7 +14,7 @@ from dualize import LimitError, memory
 
 def test_a_build_that_does_not_fit_is_refused_with_figures(monkeypatch):
     t = dualize.make.lattice(3, 3, 3, periodic="xyz")
-    monkeypatch.setattr(sys.modules["dualize.build"], "WEIGHED_FROM", 1)
+    monkeypatch.setattr(import_module("dualize.build"), "WEIGHED_FROM", 1)
     monkeypatch.setattr(memory, "available_memory", lambda: 1000)
     with pytest.raises(LimitError, match=r"building 162 simplices takes about .* GiB, and 0\.0 GiB are free"):
         dualize.build(t)

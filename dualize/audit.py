@@ -47,6 +47,8 @@ class Finding:
         What it was compared with, or why it was not.
     where : str
         The offenders, the worst ones first, at most ten by name.
+    offenders : tuple of str
+        All of them, where a check lists them; for the JSON report.
     """
 
     check: str
@@ -55,6 +57,7 @@ class Finding:
     figure: Any = ""
     against: str = ""
     where: str = ""
+    offenders: tuple[str, ...] = ()
 
     @property
     def good(self) -> bool:
@@ -63,7 +66,9 @@ class Finding:
 
     def to_dict(self) -> dict[str, Any]:
         """The finding as a mapping of plain values."""
-        return {key: getattr(self, key) for key in ("check", "kind", "verdict", "figure", "against", "where")}
+        keys = ("check", "kind", "verdict", "figure", "against", "where")
+        out = {key: getattr(self, key) for key in keys}
+        return {**out, "offenders": list(self.offenders)} if self.offenders else out
 
 
 @dataclass(frozen=True)

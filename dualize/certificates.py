@@ -37,6 +37,7 @@ __all__ = [
     "BALL",
     "NEITHER",
     "SPHERE",
+    "TRIES",
     "UNDECIDED",
     "Certificate",
     "LinkVerdicts",

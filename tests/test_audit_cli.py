@@ -55,11 +55,11 @@ def test_a_violated_identity_ends_with_1(folder):
     "name, require, said",
     [
         ("slab.txt", "closed", "closed: no"),
-        ("poincare.txt", "manifold", "manifold: undecided"),
+        ("poincare.txt", "manifold", "manifold: no"),
         ("slab.txt", "duality", "duality: not checked"),
         ("slab.txt", "volumes", "volumes: undecided"),
     ],
-    ids=["no", "undecided", "not checked", "no coordinates"],
+    ids=["no", "no sphere", "not checked", "no coordinates"],
 )
 def test_a_requirement_that_is_not_met_ends_with_1(folder, name, require, said):
     done = program("audit", name, "--require", require, cwd=folder)

@@ -6,7 +6,7 @@ from collections.abc import Callable, Iterator
 from time import perf_counter
 
 from ..audit import Finding
-from . import boundary, coloured, counting, derived, homology, space, tables
+from . import boundary, certified, coloured, counting, derived, homology, integral, space, tables
 from .subject import GUDHI_LIMIT, LINK_LIMIT, Subject
 
 __all__ = ["FIGURES", "GUDHI_LIMIT", "IDENTITIES", "LINK_LIMIT", "PROPERTIES", "Subject", "examine"]
@@ -20,10 +20,19 @@ GROUPS: list[
     ("counting", counting.check_counts, ("counts", "components"), (), ("f-vector", "ridge-degrees")),
     ("boundary", boundary.check_boundary, ("boundary-cells", "boundary-signs"), (), ("boundary",)),
     ("links", space.check_links, (), ("homology-manifold", "manifold"), ("links",)),
+    ("links", certified.check_certificates, (), (), ("certificates", "space")),
     ("counting", counting.check_relations, ("dehn-sommerville", "euler-dual", "euler-boundary"), (), ()),
     ("gudhi", counting.check_euler, ("euler",), (), ()),
     ("gudhi", homology.check_betti, ("euler-betti", "duality"), (), ("betti", "boundary-betti")),
     ("gudhi", homology.check_orientability, ("orientability",), (), ()),
+    (
+        "integers",
+        integral.check_integral,
+        ("universal-coefficients", "integral-duality"),
+        (),
+        ("homology", "relative-homology"),
+    ),
+    ("integers", integral.check_form, ("unimodular",), (), ("intersection-form",)),
     ("derived", derived.check_derived, ("derived",), (), ()),
     (
         "coloured",
@@ -33,6 +42,14 @@ GROUPS: list[
         ("colour-sets", "jackets", "degree"),
     ),
     ("foam homology", homology.check_foam, ("foam-b0", "foam-b1"), (), ()),
+    (
+        "groups",
+        integral.check_groups,
+        ("group-homology",),
+        (),
+        ("fundamental-group", "homomorphisms"),
+    ),
+    ("groups", certified.check_recognised, (), ("sphere", "ball"), ()),
     (
         "space",
         space.check_space,
@@ -45,6 +62,7 @@ GROUPS: list[
 # what is asked of some complexes only
 APPLIES: dict[Callable[[Subject], Iterator[Finding]], Callable[[Subject], bool]] = {
     derived.check_derived: derived.is_subdivided,
+    integral.check_form: integral.has_form,
     coloured.check_coloured: coloured.is_coloured,
 }
 IDENTITIES = tuple(name for group in GROUPS for name in group[2])

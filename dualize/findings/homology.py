@@ -16,14 +16,14 @@ from .subject import GUDHI_LIMIT, Subject
 if TYPE_CHECKING:
     from scipy.sparse import csc_array
 
-__all__ = ["check_betti", "check_foam", "check_orientability"]
+__all__ = ["check_betti", "check_foam", "check_orientability", "find_betti"]
 
 
 def _name(prime: int) -> str:
     return f"Z_{prime}"
 
 
-def _betti(x: Subject) -> tuple[dict[int, list[int]], str]:
+def find_betti(x: Subject) -> tuple[dict[int, list[int]], str]:
     """Betti numbers of the triangulation over each field and who found them; empty with the reason.
 
     Computed once; gudhi where it can hold the complex, else the chain complex of the classes of simplices.
@@ -51,7 +51,7 @@ def _find_betti(x: Subject) -> tuple[dict[int, list[int]], str]:
 
 def check_betti(x: Subject) -> Iterator[Finding]:
     """Betti numbers over two fields, of the whole and of its boundary, and what they must satisfy."""
-    betti, source = _betti(x)
+    betti, source = find_betti(x)
     if not betti:
         yield Finding("betti", "figure", "not checked", against=source)
         yield Finding("euler-betti", "identity", "not checked", against=source)
@@ -147,7 +147,7 @@ def check_foam(x: Subject) -> Iterator[Finding]:
 
     d1, d2 = foam_maps(x.s)
     foam = {p: foam_betti(d1, d2, p) for p in PRIMES}
-    betti, source = _betti(x)
+    betti, source = find_betti(x)
     scattered = x.twins or any(len(rows) for rows in x.census.scattered)
     for k, name in enumerate(names):
         mine = {_name(p): foam[p][k] for p in PRIMES}

@@ -12,6 +12,15 @@ import numpy as np
 
 from ..audit import SHOWN
 from ..boundary import BoundaryWalk, walk
+from ..certificates import (
+    NEITHER,
+    TRIES,
+    UNDECIDED,
+    Certificate,
+    LinkVerdicts,
+    certify_links,
+    recognise,
+)
 from ..check import check_skeleton
 from ..errors import SkeletonError
 from ..form import check_form
@@ -19,18 +28,25 @@ from ..skeleton import Skeleton
 from ..topology.classes import Census, Classes, census, classes, f_vector
 from ..topology.derived import first_derived
 from ..topology.gluing import gluing_of
+from ..topology.groups import foam_groups
+from ..topology.homology import integral_homology
 from ..topology.links import Links, link_figures
+from ..topology.presentation import Presentation
 from ..triangulation import Triangulation
 
 if TYPE_CHECKING:
     from gudhi import SimplexTree
 
-__all__ = ["GUDHI_LIMIT", "LINK_LIMIT", "Subject", "named"]
+__all__ = ["GROUP_LIMIT", "GUDHI_LIMIT", "INTEGRAL_LIMIT", "LINK_LIMIT", "Subject", "named"]
 
 # Simplices up to which the costly checks run without --full: about ten seconds of gudhi, two of links.
 GUDHI_LIMIT = 20_000
 PIECES_LIMIT = 30_000  # of a second derived subdivision: 52 tetrahedra, 2 four-simplices
 LINK_LIMIT = 400_000
+INTEGRAL_LIMIT = 200_000  # seconds of homology over the integers
+GROUP_LIMIT = 200_000
+DIFFERENT_LINKS = 200  # links of points in dimension 4 that are reduced; equal ones count once
+REDUCED_LIMIT = 3_000  # a whole space is reduced by moves up to this size
 
 
 class Witness(NamedTuple):
@@ -256,6 +272,72 @@ class Subject:
         if any(self.links.wrong(m).any() for m in range(1, self.d - 1)) or any(self.links.homology.values()):
             return "some links are no homology spheres or balls"
         return None
+
+    @cached_property
+    def verdicts(self) -> LinkVerdicts:
+        """Verdicts on all links, with certificates; `links` must not be None."""
+        most = None if self.full else DIFFERENT_LINKS
+        return certify_links(self.t, counted=self.census, figures=self.links, most=most, threads=self.threads)
+
+    @cached_property
+    def recognised(self) -> Certificate:
+        """Whether the whole is a sphere or a ball."""
+        if self.torn or self.twins:
+            return Certificate(
+                "neither", "a simplex has a link in several pieces, or two simplices one name", self.n
+            )
+        bad = any((kind == NEITHER).any() for kind in self.verdicts.kind) or self.irregular > 0
+        unknown = any((kind == UNDECIDED).any() for kind in self.verdicts.kind)
+        limit = self.over(REDUCED_LIMIT)
+        found = recognise(
+            self.t,
+            manifold=False if bad else None if unknown else True,
+            homology=None if self.no_integers else self.integral,
+            threads=self.threads,
+            tries=TRIES if limit is None else (),
+        )
+        if found.verdict == "undecided" and limit is not None:
+            return Certificate("undecided", f"moves not tried: {limit}", self.n)
+        return found
+
+    # -- over the integers -------------------------------------------------------------------------
+
+    @cached_property
+    def torn(self) -> bool:
+        """Whether a label set names a simplex with a link in several pieces."""
+        return any(len(rows) for rows in self.census.scattered)
+
+    @cached_property
+    def no_integers(self) -> str | None:
+        """Why homology over the integers is left out, or None."""
+        pieces = self.n * (factorial(self.d + 1) if self.irregular else 1)
+        if self.full or pieces <= INTEGRAL_LIMIT:
+            return None
+        return f"{pieces} simplices, limit {INTEGRAL_LIMIT}; --full"
+
+    def _homology(self, relative: bool) -> list[list[int]]:
+        return integral_homology(
+            self.t,
+            relative=relative,
+            counted=self.census,
+            facets=self.facet_classes,
+            threads=self.threads,
+        )
+
+    @cached_property
+    def integral(self) -> list[list[int]]:
+        """H_0 .. H_D over the integers."""
+        return self._homology(False)
+
+    @cached_property
+    def relative(self) -> list[list[int]]:
+        """The same relative to the boundary."""
+        return self._homology(True)
+
+    @cached_property
+    def groups(self) -> list[Presentation]:
+        """The fundamental group of each component, from the foam."""
+        return foam_groups(self.s, threads=self.threads)
 
     @cached_property
     def tree(self) -> SimplexTree | None:

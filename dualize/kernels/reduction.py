@@ -5,7 +5,7 @@ The cells of all dimensions are numbered together, those of lower dimension firs
 ``coface[coface_offsets[c]:coface_offsets[c + 1]]``.
 """
 
-__all__ = ["flow_down", "pair_cells"]
+__all__ = ["flow_down", "pair_cells", "pull_back"]
 
 
 def pair_cells(face_offsets, face, sign, coface_offsets, coface, left, mate, order, queue, n):
@@ -110,3 +110,30 @@ def flow_down(face_offsets, face, sign, mate, order, place, value, out_cell, out
         value[y] = 0
         open_cells -= 1
     return count
+
+
+def pull_back(face_offsets, face, sign, mate, order, value, start, width, bound):
+    """Extend cochains from the cells that were set apart to all cells of their dimension, as cocycles do.
+
+    `order` lists the cells of that dimension as they were removed, the first of them numbered `start`; cell c
+    has the values ``value[(c - start) * width:]``, 0 at the start but for the cells set apart.  Returns 1
+    where a value exceeds `bound`, else 0.
+    """
+    for x in range(len(order)):
+        y = order[x]
+        a = mate[y]
+        if a <= y:
+            continue
+        u = 0
+        for p in range(face_offsets[a], face_offsets[a + 1]):
+            if face[p] == y:
+                u = sign[p]
+        for w in range(width):
+            total = 0
+            for p in range(face_offsets[a], face_offsets[a + 1]):
+                if face[p] != y:
+                    total += sign[p] * value[(face[p] - start) * width + w]
+            if total > bound or total < -bound:
+                return 1
+            value[(y - start) * width + w] = -u * total
+    return 0

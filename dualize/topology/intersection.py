@@ -12,6 +12,7 @@ from ..errors import LimitError, TriangulationError
 from ..kernels import engine
 from ..kernels.orient import spread_orientation
 from ..kernels.permutations import permutations_of
+from ..kernels.reduction import pull_back
 from ..triangulation import Triangulation
 from .classes import census, classes, corner_subsets
 from .derived import first_derived
@@ -177,18 +178,10 @@ def _pull_back(paired: Paired) -> np.ndarray:
     """
     start, apart = paired.starts[2], paired.apart(2)
     value = np.zeros((paired.starts[3] - start, len(apart)), dtype=np.int64)
-    offsets, face, sign = paired.faces.indptr, paired.faces.indices, paired.faces.data
     value[apart - start, np.arange(len(apart))] = 1
-    if not len(apart):
-        return value
-    for y in paired.in_order(2).tolist():
-        a = int(paired.mate[y])
-        if a <= y:
-            continue
-        inside = slice(offsets[a], offsets[a + 1])
-        u = int(sign[inside][face[inside] == y][0])
-        row = sign[inside] @ value[face[inside] - start]  # y itself is still 0
-        if np.abs(row).max() > BOUND:
-            raise LimitError(f"values of a cochain exceed {BOUND}", hint="simplify the triangulation first")
-        value[y - start] = -u * row
+    table = (x.astype(np.int64) for x in (paired.faces.indptr, paired.faces.indices, paired.faces.data))
+    run = engine(paired.starts[5] - paired.starts[4])
+    flat = value.ravel()
+    if run(pull_back, *table, paired.mate, paired.in_order(2), flat, start, len(apart), BOUND):
+        raise LimitError(f"values of a cochain exceed {BOUND}", hint="simplify the triangulation first")
     return value

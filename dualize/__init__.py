@@ -20,7 +20,7 @@ from types import ModuleType
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
-    from . import change, make, spins
+    from . import change, draw, make, report, spins
     from .audit import Finding, Report, audit
     from .build import build
     from .errors import DualizeError, InputError, LimitError, SkeletonError, TriangulationError
@@ -55,7 +55,7 @@ _HOMES = {
 }
 
 # rooms that are used under their own names, imported on first use
-_ROOMS = ("change", "make", "spins")
+_ROOMS = ("change", "draw", "make", "report", "spins")
 
 __all__ = [
     "Coordinates",
@@ -73,12 +73,14 @@ __all__ = [
     "audit",
     "build",
     "change",
+    "draw",
     "export",
     "load",
     "make",
     "match",
     "read",
     "read_export",
+    "report",
     "spins",
 ]
 

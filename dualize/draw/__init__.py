@@ -20,7 +20,7 @@ from typing import TYPE_CHECKING, Any
 from ..errors import InputError
 from ..skeleton import Skeleton
 from .cells import face_polygon, vertex_pattern
-from .degrees import degree_histograms, histograms
+from .degrees import Histogram, degree_histograms, histograms
 from .figure import figure
 from .graphs import boundary_graph, dual_graph
 from .sketch import Sketch
@@ -34,6 +34,7 @@ if TYPE_CHECKING:
 __all__ = [
     "KINDS",
     "PARTS",
+    "Histogram",
     "Sketch",
     "encode",
     "figure",

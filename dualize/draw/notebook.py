@@ -12,7 +12,7 @@ from ..triangulation import Triangulation
 __all__ = ["report_table", "skeleton_table", "triangulation_table"]
 
 SHOWN = 5  # simplices of a triangulation
-MARKS = {"holds": "✓", "yes": "✓", "violated": "✗", "no": "✗", "undecided": "?", "not checked": "?"}
+MARKS = {"holds": "✓", "yes": "✓", "violated": "✗", "no": "\u2013", "undecided": "?", "not checked": "?"}
 
 
 def triangulation_table(t: Triangulation) -> str:

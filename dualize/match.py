@@ -8,7 +8,7 @@ tried and followed through the gluings.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from itertools import islice
 from typing import Any, NamedTuple
@@ -22,7 +22,7 @@ from .layout import wedge_pairs
 from .skeleton import Skeleton
 from .topology.gluing import gluing_of
 
-__all__ = ["Match", "match"]
+__all__ = ["Match", "boundary_map", "match"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -162,6 +162,44 @@ def match(
     return [_made("isomorphism", a, b, maps, whole) for maps in found]
 
 
+def boundary_map(a: Skeleton, b: Skeleton, nodes: Any, places: Any, by: str = "given") -> Match:
+    """The map of boundaries with these nodes and places, as `match` finds them and files keep them.
+
+    Parameters
+    ----------
+    a, b : Skeleton
+    nodes : array_like of int, shape (B,)
+        Node of `b` for each node of `a`.
+    places : array_like of int, shape (B, D)
+        Place there of each place.
+    by : str
+        What to say of its origin.
+
+    Raises
+    ------
+    InputError
+        If this is no map that identifies the boundaries.
+    """
+    n, d = len(a["nodes/edge"]), a.dimension
+    hint = "maps lead from the boundary of the first foam to that of the second: dualize match FIRST SECOND"
+    u, p = np.array(nodes), np.array(places)
+    if n == 0 or len(b["nodes/edge"]) != n or b.dimension != d or u.shape != (n,) or p.shape != (n, d):
+        raise InputError(
+            "the map is about other boundaries",
+            f"{n} and {len(b['nodes/edge'])} nodes, {len(u)} mapped",
+            hint,
+        )
+    for x, what in ((u, "nodes"), (p, "places")):
+        size = x.shape[-1]
+        if x.dtype.kind not in "iu" or (np.sort(x, axis=-1) != np.arange(size)).any():
+            raise InputError(f"the {what} of the map are no rearrangement of 0 to {size - 1}", hint=hint)
+    ours, theirs = _glued(a, False), _glued(b, False)
+    maps = u.tolist(), ours.tables.rank(p).tolist()
+    if not _keeps_gluings(ours, theirs, *maps):
+        raise InputError("the map does not carry links to links", hint=hint)
+    return _made(by, a, b, maps, False)
+
+
 def _glued(s: Skeleton, whole: bool) -> _Glued:
     if whole:
         t = gluing_of(s)
@@ -190,20 +228,24 @@ def _by_names(a: _Glued, b: _Glued) -> Maps | None:
         rank.append(int(a.tables.rank(np.array([b.names[y].index(name) for name in row]))))
     if len(set(image)) != len(image):
         return None
+    return (image, rank) if _keeps_gluings(a, b, image, rank) else None
+
+
+def _keeps_gluings(a: _Glued, b: _Glued, image: Sequence[int], rank: Sequence[int]) -> bool:
+    """Whether the map followed by a gluing of `b` is the gluing of `a` followed by the map."""
     u, p = np.array(image, dtype=np.int64), np.array(rank, dtype=np.int64)
-    # the map followed by a gluing of b must be the gluing of a followed by the map
     k = a.across.shape[1]
     slots = np.arange(k)
     there_b = b.across[u[:, None], a.tables.image[p][:, slots]]
     rank_b = b.rank[u[:, None], a.tables.image[p][:, slots]]
     inner = a.across >= 0
     if ((there_b >= 0) != inner).any():
-        return None
+        return False
     if (there_b[inner] != u[a.across[inner]]).any():
-        return None
+        return False
     mine = a.tables.compose[p[np.where(inner, a.across, 0)], a.rank]
     other = a.tables.compose[rank_b, p[:, None]]
-    return None if (mine[inner] != other[inner]).any() else (image, rank)
+    return not (mine[inner] != other[inner]).any()
 
 
 def _isomorphisms(a: _Glued, b: _Glued) -> Iterator[Maps]:

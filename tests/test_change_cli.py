@@ -119,6 +119,66 @@ def test_slabs_glue_by_a_map_in_a_file(tmp_path):
     assert len(rows(done.stdout)) == 40
 
 
+@pytest.fixture
+def halves(tmp_path):
+    """CP2 without a simplex, the same with other labels, and the maps between their boundaries."""
+    one, two, maps = tmp_path / "one.txt", tmp_path / "two.txt", tmp_path / "maps.json"
+    Triangulation.from_facets(CATALOGUE["cp2_minus_ball_9"].facets).write(one)
+    assert run("change", one, "relabel", "--seed", 5, "-o", two).returncode == 0
+    found = run("match", one, two, "--by", "isomorphism", "--all", 200, "--json")
+    maps.write_text(found.stdout)
+    return one, two, maps, json.loads(found.stdout)["maps"]
+
+
+def test_the_maps_of_match_glue(halves):
+    one, two, file, maps = halves
+    assert len(maps) == 120  # all rearrangements of 5 points
+    done = run("change", one, "glue", two, "--map", file)
+    assert done.returncode == 0, done.stderr
+    assert len(rows(done.stdout)) == 70
+    assert "does not reverse" not in done.stderr
+    keeping = next(n for n, one in enumerate(maps) if one["node_sign"][0] == 1)
+    assert "does not reverse" in run("change", one, "glue", two, "--map", file, "--which", keeping).stderr
+
+
+@pytest.mark.parametrize(
+    "damage, message",
+    [
+        (lambda m: m["nodes"].reverse(), "does not carry links to links"),
+        (lambda m: m["places"][0].__setitem__(0, 3), "the places of the map are no rearrangement"),
+        (lambda m: m["nodes"].__setitem__(0, m["nodes"][1]), "the nodes of the map are no rearrangement"),
+        (lambda m: m["nodes"].pop(), "the map is about other boundaries"),
+        (lambda m: m.pop("places"), "a map has no nodes or no places"),
+    ],
+    ids=["links", "places", "nodes", "short", "missing"],
+)
+def test_damaged_maps_of_match_are_refused(halves, damage, message):
+    one, two, file, maps = halves
+    damage(maps[0])
+    file.write_text(json.dumps({"maps": maps[:1]}))
+    done = run("change", one, "glue", two, "--map", file)
+    assert (done.returncode, done.stdout) == (2, "")
+    assert message in done.stderr and "maps.json" in done.stderr
+
+
+@pytest.mark.parametrize(
+    "arguments, message",
+    [(["--map", "FILE", "--which", 120], "there is no map 120"), (["--which", 0], "--which goes with --map")],
+    ids=["too-far", "alone"],
+)
+def test_wrong_choices_of_a_map_are_refused(halves, arguments, message):
+    one, two, file, _ = halves
+    done = run("change", one, "glue", two, *[file if x == "FILE" else x for x in arguments])
+    assert (done.returncode, done.stdout) == (2, "")
+    assert message in done.stderr
+
+
+def test_the_help_of_a_change_needs_no_input():
+    done = run("change", "glue", "--help")
+    assert done.returncode == 0, done.stderr
+    assert done.stdout.startswith("Usage: dualize change INPUT glue") and "--map" in done.stdout
+
+
 def test_the_list_shows_every_change_in_one_line():
     done = run("change", "--list")
     names = [line.split()[0] for line in done.stdout.splitlines()]

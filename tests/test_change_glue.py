@@ -8,8 +8,9 @@ import pytest
 from catalogue import CATALOGUE, SMALL_GLUINGS
 from specimens import slab
 
-from dualize import Coordinates, InputError, Triangulation, TriangulationError, build, change
+from dualize import Coordinates, InputError, Triangulation, TriangulationError, build, change, match
 from dualize.topology.classes import classes
+from dualize.topology.intersection import intersection_form
 
 
 def listed(name):
@@ -112,6 +113,34 @@ def test_gluing_tables_glue_by_a_map_that_is_found():
     whole = change.glue(cut, cut, found=True).triangulation
     assert build(whole).counts["nodes"] == 0
     assert build(whole).flags["orientable"] == [True]
+
+
+def test_the_sign_of_the_map_tells_the_two_sums_of_cp2_apart():
+    """Signatures add up: 1 + 1 or 1 - 1 (J. Milnor, D. Husemoller, Symmetric Bilinear Forms, 1973, ch. V)."""
+    half = listed("cp2_minus_ball_9")
+    maps = match(build(half), build(half), limit=1000, by="isomorphism")
+    assert len(maps) == 120  # the rearrangements of the 5 points of the boundary
+    for sign, signature in ((-1, 2), (1, 0)):
+        t = change.glue(half, half, next(m for m in maps if (m.node_sign == sign).all())).triangulation
+        assert (len(t), int((t.across < 0).sum())) == (70, 0)
+        assert abs(intersection_form(t).signature) == signature
+
+
+def test_a_map_of_boundaries_glues_gluing_tables_as_it_says():
+    t = change.cut(table(SMALL_GLUINGS["tetrahedra_2_4"]), [(0, 0)]).triangulation
+    s = build(t)
+    (one,) = match(s, s, by="isomorphism")
+    whole = change.glue(t, t, one).triangulation
+    for n, (v, i) in enumerate(zip(s["nodes/vertex"].tolist(), s["nodes/slot"].tolist(), strict=True)):
+        there = int(one.nodes[n])
+        assert whole.across[v, i] == len(t) + s["nodes/vertex"][there]
+
+
+def test_a_map_of_other_boundaries_is_refused():
+    half, slabs = listed("cp2_minus_ball_9"), listed("rp3_x_i_22")
+    (one,) = match(build(half), build(half))
+    with pytest.raises(InputError, match="about other boundaries"):
+        change.glue(half, slabs, one)
 
 
 def test_facets_glue_corner_by_corner():

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -20,6 +20,10 @@ from .joints import (
     with_gluings,
 )
 from .tables import orientations
+
+if TYPE_CHECKING:
+    from ..match import Match
+    from ..skeleton import Skeleton
 
 __all__ = ["glue", "glue_facets", "union"]
 
@@ -41,7 +45,7 @@ def union(first: Triangulation, second: Triangulation) -> Changed:
 def glue(
     first: Triangulation,
     second: Triangulation | None = None,
-    names: Mapping[Any, Any] | None = None,
+    names: Mapping[Any, Any] | Match | None = None,
     *,
     found: bool = False,
     components: tuple[int, int] | None = None,
@@ -51,13 +55,14 @@ def glue(
     Parameters
     ----------
     first : Triangulation
-        A labelled complex; with `found` also a gluing table.
+        A labelled complex; with `found` or a `Match` also a gluing table.
     second : Triangulation, optional
         Another one; without it `first` is glued to itself.
-    names : mapping, optional
+    names : mapping or Match, optional
         Label in `first` to which each label of `second` (of `first` itself) is glued.  Boundary facets all
         of whose labels it holds are glued to those with the labels it gives.  By default, of two complexes,
-        equal labels.
+        equal labels.  Or a map of the whole boundary of `first` to that of `second`, as `dualize.match` finds
+        it for their foams.
     found : bool
         Instead: glue the whole boundaries by an isomorphism that is looked for, one that reverses their
         orientations if there is one.
@@ -91,11 +96,13 @@ def glue(
             raise InputError("components are those of one complex, and two are given")
         return _glue_itself(first, _component_map(first, components))
     if second is None:
-        if names is None:
+        if not isinstance(names, Mapping):
             raise InputError("gluing a complex to itself needs a map of labels, or two boundary components")
         return _glue_itself(first, names)
     if found:
         return _glue_found(first, second)
+    if not isinstance(names, Mapping | None):
+        return _glue_boundaries(first, second, names)
     one = need_labels(first, "gluing by labels")
     if second.dimension != first.dimension:
         raise InputError(
@@ -190,7 +197,20 @@ def _glue_found(first: Triangulation, second: Triangulation) -> Changed:
     maps = match(a, b, limit=MAPS, by="isomorphism")
     if not maps:
         raise TriangulationError("the boundaries are not isomorphic, so there is no map to glue them by")
-    chosen = next((m for m in maps if (m.node_sign == -1).all()), maps[0])
+    return _by_match(first, second, a, b, next((m for m in maps if (m.node_sign == -1).all()), maps[0]))
+
+
+def _glue_boundaries(first: Triangulation, second: Triangulation, given: Match) -> Changed:
+    from ..build import build
+    from ..match import boundary_map
+
+    a, b = build(first), build(second)
+    return _by_match(first, second, a, b, boundary_map(a, b, given.nodes, given.places))
+
+
+def _by_match(
+    first: Triangulation, second: Triangulation, a: Skeleton, b: Skeleton, chosen: Match
+) -> Changed:
     k = first.dimension + 1
     pairs = []
     for n, (s, i) in enumerate(zip(a["nodes/vertex"].tolist(), a["nodes/slot"].tolist(), strict=True)):
@@ -203,7 +223,7 @@ def _glue_found(first: Triangulation, second: Triangulation) -> Changed:
     if labels is not None:
         labels = merged_labels(labels, joined)
     if not (chosen.node_sign == -1).all():
-        notes.append("the map does not reverse the orientation of the boundary, for none was found that does")
+        notes.append("the map does not reverse the orientation of the boundary everywhere")
     one, _ = orientations(first)
     wanted = np.concatenate([one, orientations(glued)[0][len(first) :]])
     result = finished(

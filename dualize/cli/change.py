@@ -9,6 +9,7 @@ from typing import Any
 import click
 
 from ..errors import InputError
+from .beside import boundary_maps, label_map, moves_record, save_json
 from .common import (
     SETTINGS,
     VerbGroup,
@@ -36,6 +37,8 @@ class Changes(VerbGroup):
         """INPUT may be left out where only help or the list is wanted; then the first word is none."""
         if not args:
             raise InputError(f"{ctx.command_path} needs an input and a change", hint=LIST)
+        if len(args) == 2 and args[0] in self.commands and args[1] in ctx.help_option_names:
+            args = ["INPUT", *args]
         return super().parse_args(ctx, args)
 
     def collect_usage_pieces(self, ctx: click.Context) -> list[str]:
@@ -64,7 +67,7 @@ def command(
 
     INPUT is never altered, and labels of what does not change stay; new labels are stated on standard error.
     Without -o the result goes to standard output: a list of labels, or JSON where it is a gluing table.
-    Labels are separated by commas: 0,3,5,8.
+    Labels are separated by commas: 0,3,5,8. The options of a change: dualize change CHANGE --help.
     """
     if changes:
         group = ctx.command
@@ -99,21 +102,6 @@ def _write(result: Any, source: str, output: str, to_kind: str | None, force: bo
     if output != "-" and source != "-" and os.path.exists(output) and os.path.samefile(source, output):
         raise InputError("the output is the input, which a change never alters", output, "write another file")
     write_output(result, output, to_kind=to_kind, force=force)
-
-
-def _save(path: str, document: dict, force: bool) -> None:
-    import orjson
-
-    if os.path.exists(path) and not force:
-        raise InputError("the file exists already", path, "--force overwrites it")
-    temporary = f"{path}.{os.getpid()}.part"
-    try:
-        with open(temporary, "xb") as stream:
-            stream.write(orjson.dumps(document, option=orjson.OPT_SERIALIZE_NUMPY) + b"\n")
-        os.replace(temporary, path)
-    finally:
-        if os.path.exists(temporary):
-            os.remove(temporary)
 
 
 def _tell(result: Any, before: int) -> None:
@@ -162,9 +150,9 @@ def _change(name: str, *, records: bool = False) -> Callable[[Callable[..., Any]
             outcome = result.refinement if name in REFINEMENTS else result.triangulation
             _write(outcome, ctx.obj["path"], output, to_kind, force)
             if record is not None:
-                _save(record, result.moves.to_dict(), force)
+                save_json(record, result.moves.to_dict(), force)
             if origin is not None:
-                _save(
+                save_json(
                     origin,
                     {"refined_from": result.refined_from, "new_labels": list(result.new_labels)},
                     force,
@@ -220,51 +208,6 @@ def _numbers(words: Sequence[str] | str, what: str) -> list[int]:
         if not word.isdecimal():
             raise InputError(f"{word!r} is no {what}", hint="give numbers from 0")
         out.append(int(word))
-    return out
-
-
-def _read_record(path: str) -> Any:
-    import orjson
-
-    from ..change import Moves
-
-    try:
-        with open(path, "rb") as stream:
-            document = orjson.loads(stream.read())
-    except orjson.JSONDecodeError as error:
-        raise InputError(f"this is no JSON: {error}", path) from None
-    except OSError as error:
-        raise InputError(f"the record cannot be read: {error.strerror}", path) from None
-    try:
-        return Moves.from_dict(document)
-    except InputError as error:
-        raise error.at(path) from None
-
-
-def _read_map(path: str) -> dict[str, str]:
-    """A map of labels: lines of two labels, or a JSON object."""
-    try:
-        with open(path, encoding="utf-8") as stream:
-            text = stream.read()
-    except (OSError, UnicodeDecodeError) as error:
-        raise InputError(f"the map cannot be read: {error}", path) from None
-    if text.lstrip().startswith("{"):
-        import orjson
-
-        try:
-            return {str(key): str(value) for key, value in orjson.loads(text).items()}
-        except orjson.JSONDecodeError as error:
-            raise InputError(f"this is no JSON: {error}", path) from None
-    out: dict[str, str] = {}
-    for n, line in enumerate(text.splitlines(), 1):
-        words = line.split("#")[0].split()
-        if not words:
-            continue
-        if len(words) != 2:
-            raise InputError("a line of the map has not two labels", f"{path}, line {n}: {line.strip()}")
-        if words[0] in out:
-            raise InputError(f"the label {words[0]} is mapped twice", f"{path}, line {n}")
-        out[words[0]] = words[1]
     return out
 
 
@@ -338,7 +281,7 @@ def replay(t: Any, record_file: str) -> Any:
     """Make the moves of a record."""
     from .. import change
 
-    return change.replay(t, _read_record(record_file))
+    return change.replay(t, moves_record(record_file))
 
 
 @_change("undo")
@@ -350,7 +293,7 @@ def undo(t: Any, record_file: str, count: int | None) -> Any:
     """Take the moves of a record back, which restores their input."""
     from .. import change
 
-    return change.undo(t, _read_record(record_file), count)
+    return change.undo(t, moves_record(record_file), count)
 
 
 @_change("simplify", records=True)
@@ -451,12 +394,24 @@ def union(t: Any, other: str) -> Any:
 @_options(
     click.argument("other", metavar="[OTHER]", required=False),
     click.option(
-        "--map", "map_file", metavar="FILE", help="Lines of two labels: of OTHER (or INPUT), and of INPUT."
+        "--map",
+        "map_file",
+        metavar="FILE",
+        help="Lines of two labels, of OTHER (or INPUT) and of INPUT; "
+        "or what dualize match INPUT OTHER --json prints.",
+    ),
+    click.option(
+        "--which",
+        type=click.IntRange(min=0),
+        metavar="N",
+        help="Of the maps of dualize match this one; by default the first that reverses orientations.",
     ),
     click.option("--found", is_flag=True, help="By an isomorphism of the boundaries that is looked for."),
     click.option("--components", metavar="M,N", help="Glue these two boundary components of INPUT."),
 )
-def glue(t: Any, other: str | None, map_file: str | None, found: bool, components: str | None) -> Any:
+def glue(
+    t: Any, other: str | None, map_file: str | None, which: int | None, found: bool, components: str | None
+) -> Any:
     """Glue another one on along equal labels, by a map, or INPUT to itself."""
     from .. import change
 
@@ -466,9 +421,34 @@ def glue(t: Any, other: str | None, map_file: str | None, found: bool, component
         if len(numbers) != 2:
             raise InputError(f"two components are glued, and {len(numbers)} are given")
         pair = (numbers[0], numbers[1])
-    names = None if map_file is None else _read_map(map_file)
     second = None if other is None else _triangulation(other)
+    names: Any = None
+    if map_file is not None:
+        maps = None if second is None else boundary_maps(map_file)
+        names = label_map(map_file) if maps is None else _chosen(t, second, maps, which, map_file)
+    if which is not None and (map_file is None or isinstance(names, dict)):
+        raise InputError("--which goes with --map and the maps of dualize match --json")
     return change.glue(t, second, names, found=found, components=pair)
+
+
+def _chosen(t: Any, second: Any, maps: list[dict], which: int | None, path: str) -> Any:
+    """One of the maps between the boundaries."""
+    from ..build import build
+    from ..match import boundary_map
+
+    if which is not None and which >= len(maps):
+        raise InputError(f"there is no map {which}", path, f"it holds {len(maps)}, numbered from 0")
+    foams = build(t), build(second)
+    found = None
+    for one in maps if which is None else maps[which : which + 1]:
+        try:
+            made = boundary_map(*foams, one["nodes"], one["places"])
+        except InputError as error:
+            raise error.at(path) from None
+        found = made if found is None else found
+        if (made.node_sign == -1).all():
+            return made
+    return found
 
 
 @_change("cut")
@@ -534,7 +514,7 @@ def relabel(t: Any, map_file: str | None, seed: int | None) -> Any:
     """Other labels: by a map, at random, or (by default) 0, 1, 2, ... in order."""
     from .. import change
 
-    names: dict[str, Any] | None = None if map_file is None else dict(_read_map(map_file))
+    names: dict[str, Any] | None = None if map_file is None else dict(label_map(map_file))
     if names is not None and t.corner_names is None:
         words = [x for x in names.values() if not x.removeprefix("-").isdecimal()]
         if words and len(words) < len(names):

@@ -8,21 +8,21 @@ from itertools import combinations
 import meshio
 import pytest
 from commandline import MESHES
+from commandline import dualize as program
 
 import dualize
 
 TEXT = (MESHES / "README.md").read_text()
 
 
-def rows():
-    """The rows of the table by file."""
-    table = [line for line in TEXT.splitlines() if line.startswith("| ")]
-    table = [line for line in table if not line.startswith(("| file", "| ---"))]
+def rows(number):
+    """The rows of a table by file."""
+    table = re.findall(r"^\| file .*\n\| ---.*\n((?:\| .*\n)+)", TEXT, re.M)[number].splitlines()
     cells = [[cell.strip() for cell in line.strip("|").split("|")] for line in table]
     return {row[0]: row[1:] for row in cells}
 
 
-ROWS = rows()
+ROWS, AUDITS = rows(0), rows(1)
 FILES = sorted(path.name for path in MESHES.iterdir() if path.name != "README.md")
 CHECKSUMS = {name: digits for digits, name in re.findall(r"^([0-9a-f]{64})  (\S+)$", TEXT, re.M)}
 
@@ -48,8 +48,9 @@ def facets(name):
 LABELLED = [name for name in FILES if name.endswith((".txt", ".vtk")) or name == "hypercube.json"]
 
 
-def test_every_file_has_a_row_and_a_checksum():
+def test_every_file_has_a_row_in_both_tables_and_a_checksum():
     assert sorted(ROWS) == FILES
+    assert sorted(AUDITS) == FILES
     assert sorted(CHECKSUMS) == FILES
 
 
@@ -96,6 +97,33 @@ def test_the_program_finds_what_the_table_says(name):
     assert found == counts(name)
     assert ("yes" if all(s.flags["orientable"]) else "no") == orientable
     assert ("closed" if pieces == 0 else f"{pieces} piece{'s' if pieces > 1 else ''}") == boundary
+
+
+@pytest.mark.parametrize("name", FILES)
+def test_the_audit_says_what_its_table_says(name, tmp_path):
+    done = program("audit", MESHES / name, "--json", cwd=tmp_path)
+    assert done.returncode == 0, done.stderr
+    found = {finding["check"]: finding for finding in json.loads(done.stdout)["findings"]}
+    assert [check for check, finding in found.items() if finding["verdict"] == "violated"] == []
+    euler, *betti = AUDITS[name][:3]
+    assert found["euler"]["figure"] == int(euler)
+    assert list(found["betti"]["figure"].values()) == [[int(b) for b in row.split()] for row in betti]
+    checks = ("connected", "closed", "orientable", "manifold", "simplicial", "sides")
+    assert [found[check]["verdict"] for check in checks] == AUDITS[name][3:]
+
+
+def cells_of(top):
+    """Numbers of simplices by dimension, as subsets."""
+    sizes = range(1, len(next(iter(top))) + 1)
+    return [len({face for s in top for face in combinations(sorted(s), m)}) for m in sizes]
+
+
+@pytest.mark.parametrize("name", LABELLED)
+def test_the_euler_characteristics_of_the_audit_table_by_counting_subsets(name):
+    counted = sum((-1) ** m * n for m, n in enumerate(cells_of(facets(name))))
+    assert counted == int(AUDITS[name][0])
+    for row in AUDITS[name][1:3]:
+        assert sum((-1) ** m * int(b) for m, b in enumerate(row.split())) == counted
 
 
 def test_the_figure_eight_knot_has_six_tetrahedra_around_both_edges():

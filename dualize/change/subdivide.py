@@ -10,6 +10,7 @@ import numpy as np
 from ..errors import InputError
 from ..kernels.permutations import permutations_of
 from ..topology.classes import classes, corner_subsets
+from ..topology.derived import first_derived
 from ..triangulation import Coordinates, Triangulation
 from .charts import averages, charts
 from .common import (
@@ -161,7 +162,7 @@ def derived(triangulation: Triangulation, times: int = 1) -> Changed:
     for _ in range(times - 1):
         again = _derived(result.triangulation)
         result = Changed(again.triangulation, result.refined_from[again.refined_from])
-    return Changed(result.triangulation, result.refined_from, _new_names(t, result.triangulation))
+    return Changed(result.triangulation, result.refined_from, new_labels_of(t, result.triangulation))
 
 
 def refine(triangulation: Triangulation, factor: int) -> Changed:
@@ -211,26 +212,12 @@ def refine(triangulation: Triangulation, factor: int) -> Changed:
     template = edgewise(d, factor)
     across, rank = glued_pieces(t, template)
     result = _finish(t, template, across, rank)
-    return Changed(result.triangulation, result.refined_from, _new_names(t, result.triangulation))
+    return Changed(result.triangulation, result.refined_from, new_labels_of(t, result.triangulation))
 
 
 def _derived(t: Triangulation) -> Changed:
-    n, k = t.across.shape
-    tables = permutations_of(k - 1)
-    images = tables.image.astype(np.int64)
-    q = len(images)
-    across = np.empty((n, q, k), dtype=np.int64)
-    base = np.arange(n)[:, None] * q
-    for i in range(k - 1):
-        swapped = images.copy()
-        swapped[:, [i, i + 1]] = swapped[:, [i + 1, i]]
-        across[:, :, i] = base + tables.rank(swapped)
-    last = images[:, -1]
-    there = t.across[:, last].astype(np.int64)
-    turned = tables.compose[t.rank[:, last], np.arange(q)]
-    across[:, :, -1] = np.where(there >= 0, there * q + turned, -1)
-    rank = np.zeros((n * q, k), dtype=np.uint8)
-    return _finish(t, barycentric(k - 1), across.reshape(-1, k), rank)
+    fine = first_derived(t)
+    return _finish(t, barycentric(t.dimension), fine.across.astype(np.int64), fine.rank)
 
 
 def _finish(t: Triangulation, template: Template, across: np.ndarray, rank: np.ndarray) -> Changed:
@@ -264,16 +251,13 @@ def _finish(t: Triangulation, template: Template, across: np.ndarray, rank: np.n
         if fine is not None and row is None:
             order = np.argsort(labels if words is None else new_positions(labels, words), axis=1)
             corner = np.take_along_axis(fine[:, piece].reshape(n * q, k, -1), order[:, :, None], axis=1)
-            new = _with(new, Coordinates(corner=corner, period=period))
+            new = with_fields(new, coordinates=Coordinates(corner=corner, period=period))
         return Changed(new, refined_from)
     if fine is not None:
-        plain = _with(plain, Coordinates(corner=fine[:, piece].reshape(n * q, k, -1), period=period))
+        plain = with_fields(
+            plain, coordinates=Coordinates(corner=fine[:, piece].reshape(n * q, k, -1), period=period)
+        )
     return Changed(plain, refined_from)
-
-
-def _with(t: Triangulation, coordinates: Coordinates) -> Triangulation:
-
-    return with_fields(t, coordinates=coordinates)
 
 
 def _points(t: Triangulation, weight: np.ndarray) -> tuple[np.ndarray, list[str] | None]:
@@ -317,8 +301,3 @@ def _points(t: Triangulation, weight: np.ndarray) -> tuple[np.ndarray, list[str]
         return out, None
     out[:, new] += len(t.corner_names)
     return out, [*t.corner_names, *fresh_words(t.corner_names, total)]
-
-
-def _new_names(before: Triangulation, after: Triangulation) -> list:
-
-    return new_labels_of(before, after)

@@ -269,6 +269,47 @@ def test_the_traceback_of_a_fault_is_shown_on_request(here):
     assert b"Traceback" in run.stderr
 
 
+# -- streams that are closed, and the environment --------------------------------------------------
+
+CLOSED = {
+    "input": ("build - -o foam.json <&-", "standard input is closed"),
+    "output": ("build one.txt -o - >&-", "standard output is closed"),
+    "output-of-words": ("describe one.txt >&-", "standard output is closed"),
+}
+
+
+def shell(here, line):
+    return subprocess.run(
+        f'"{PROGRAM}" {line}', shell=True, cwd=here, capture_output=True, env=environment(), timeout=60
+    )
+
+
+@pytest.mark.parametrize(("line", "what"), CLOSED.values(), ids=CLOSED.keys())
+def test_a_closed_stream_is_named(here, line, what):
+    assert refused(shell(here, line))[0] == f"{what} (-)"
+    assert not (here / "foam.json").exists()
+
+
+def test_closed_standard_error_puts_no_talk_into_the_data(here):
+    run = shell(here, "build one.txt -o - 2>&-")
+    assert (run.returncode, run.stderr) == (0, b"")
+    assert json.loads(run.stdout)["format"] == "foam-skeleton"
+
+
+@pytest.mark.parametrize("value", ["0", "two", "-1", "1.5"])
+def test_a_wrong_number_of_threads_in_the_environment_is_refused(here, value):
+    what, _ = refused(dualize("build", "one.txt", "-o", "foam.json", cwd=here, DUALIZE_THREADS=value))
+    assert what.startswith(f"DUALIZE_THREADS is {value!r}, not a number of threads")
+
+
+def test_a_ridge_with_a_holonomy_is_refused_with_the_name_of_the_file(here):
+    (here / "knot.csv").write_text("simplex,slot,across,image0,image1,image2,image3\n0,2,0,1,0,3,2\n")
+    assert (
+        "(knot.csv, simplex 0, slots 2 and 3)"
+        in refused(dualize("build", "knot.csv", "-o", "foam.json", cwd=here))[0]
+    )
+
+
 # -- pipes and signals -----------------------------------------------------------------------------
 
 

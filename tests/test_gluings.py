@@ -272,9 +272,13 @@ def test_neighbours_that_labels_do_not_explain_are_refused_with_the_place(name):
     [
         ("0 1 2 3 -1 -1 -1", "there are 7 numbers", "line 1"),
         ("0 1 2 -1 -1 -1\n0 1 2 -1 -1 x", "'x' is no integer", "line 2"),
+        ("a b c -1 -1 -1\n\nb c d -1 -1 x", "'x' is no integer", "line 3"),
+        ("a b c -1 -1 -1\nb c 4.5 -1 -1 -1", "a number but no integer", "line 2: 4.5"),
+        ("a,b,,-1,-1,-1", "a label is empty", "line 1"),
+        ("a b c -1 -1 -1\nb c d -1 -1", "5 cells in this line, not 6", "line 2"),
         ("# nothing\n", "no simplex", None),
     ],
-    ids=["width", "word", "empty"],
+    ids=["width", "word", "word-as-neighbour", "fraction-as-label", "blank-label", "short-line", "empty"],
 )
 def test_wrong_text_of_labels_and_neighbours_is_refused_with_its_line(text, what, where):
     with pytest.raises(dualize.InputError, match=what) as caught:
@@ -285,6 +289,32 @@ def test_wrong_text_of_labels_and_neighbours_is_refused_with_its_line(text, what
 def test_tables_without_permutations_and_labels_are_refused():
     with pytest.raises(dualize.InputError, match="neither carry nor corners"):
         decode(b'{"across": [[-1, -1, -1]]}', "json")
+
+
+def test_labels_beside_neighbours_may_be_words():
+    t = read_csv("sea,bay,4,1,-1,-1\nair,bay,4,0,-1,-1\n", "labels-and-neighbours")
+    assert t.corner_names == ("4", "air", "bay", "sea")
+    assert t.named(t.corners) == [["sea", "bay", "4"], ["air", "bay", "4"]]
+    assert t.across.tolist() == [[1, -1, -1], [0, -1, -1]]
+    assert encode(t, "labels-and-neighbours") == b"sea bay 4 1 -1 -1\nair bay 4 0 -1 -1\n"
+
+
+@pytest.mark.parametrize("word", ["a b", "a,b", "a#", '"a"', "1e3", "a\u00a0b"])
+def test_words_that_would_not_come_back_are_not_written_beside_neighbours(word):
+    t = Triangulation.from_facets([["x", "y", word]])
+    with pytest.raises(dualize.InputError, match="would not come back from text"):
+        encode(t, "labels-and-neighbours")
+
+
+def test_labels_beside_neighbours_must_have_names():
+    with pytest.raises(dualize.InputError, match="a label has none"):
+        Triangulation.from_neighbours([[0, 1, 9]], [[0, -1, -1]], corner_names=("a", "b"))
+
+
+def test_facets_beside_a_gluing_table_are_refused():
+    text = b'{"facets": [[0, 1, 2]], "across": [[-1, -1, -1]], "carry": [[[0, 1, 2], [0, 1, 2], [0, 1, 2]]]}'
+    with pytest.raises(dualize.InputError, match="both facets and a gluing table"):
+        decode(text, "json")
 
 
 def test_labels_and_neighbours_are_not_written_where_they_do_not_say_it_all():

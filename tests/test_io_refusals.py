@@ -566,6 +566,35 @@ def test_damage_anywhere_is_an_error_or_harmless(kind):
             assert "validate" in str(error)
 
 
+def test_json_that_is_no_utf8_is_named_with_its_line(tmp_path):
+    error = refused(put(tmp_path, "a.json", b'[["a", "b",\n "\xe9"]]'), "this is no UTF-8 text")
+    assert error.where.endswith("line 2")
+
+
+def test_a_dataset_without_a_shape_is_no_table(tmp_path):
+    import h5py
+
+    with h5py.File(tmp_path / "a.h5", "w") as file:
+        file["cells"] = h5py.Empty("i8")
+    refused(tmp_path / "a.h5", "no array could hold facets, among cells")
+
+
+def test_words_in_a_dataset_of_any_name_are_read(tmp_path):
+    import h5py
+
+    with h5py.File(tmp_path / "a.h5", "w") as file:
+        file.create_dataset(
+            "cells", data=np.array([["a", "c", "b"]], dtype=object), dtype=h5py.string_dtype()
+        )
+    assert read(tmp_path / "a.h5") == Triangulation.from_facets([["a", "c", "b"]])
+
+
+def test_a_damaged_header_is_named_and_not_shown(tmp_path):
+    text = b"{'descr': __import__, 'shape': (1, 3)}\n"
+    data = b"\x93NUMPY\x01\x00" + len(text).to_bytes(2, "little") + text
+    assert refused(put(tmp_path, "a.npy", data), "the header is damaged").what == "the header is damaged"
+
+
 def test_every_format_says_what_it_holds():
     assert all(f.holds and (f.read or f.write) for f in formats().values())
     assert all(s.startswith(".") and s == s.lower() for f in formats().values() for s in f.suffixes)

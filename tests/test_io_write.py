@@ -190,6 +190,16 @@ def test_what_a_format_cannot_hold(tmp_path, content, name, options, what):
     assert os.listdir(tmp_path) == []
 
 
+def test_the_suffixes_named_for_a_skeleton_are_those_that_hold_one(tmp_path):
+    with pytest.raises(InputError, match="no format has the suffix") as caught:
+        write(FOAM, tmp_path / "a.docx")
+    assert caught.value.where == str(tmp_path / "a.docx")
+    assert caught.value.hint.startswith("known suffixes: .h5, .hdf5, .hdf, .npz, .json; ")
+    with pytest.raises(InputError, match="no format has the suffix") as caught:
+        write(T, tmp_path / "a.docx")
+    assert caught.value.hint.count(".csv") == 1
+
+
 def test_dropped_coordinates_are_noted(tmp_path):
     notes = []
     t = Triangulation.from_facets(sp.simplex(3), coordinates=np.eye(4))

@@ -13,6 +13,7 @@ from ..progress import progress
 from ..skeleton import Skeleton
 from .common import (
     input_options,
+    naming,
     note,
     open_input,
     output_options,
@@ -66,7 +67,7 @@ def command(
         raise InputError(
             "this is a skeleton already", path, "give the triangulation; dualize describe tells more"
         )
-    with progress("building"):
+    with progress("building"), naming(path):
         skeleton = build(
             given.content, keep_singular=keep_singular, points=points, any_size=any_size, threads=threads
         )

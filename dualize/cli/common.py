@@ -6,7 +6,8 @@ import os
 import signal
 import sys
 import traceback
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
 from difflib import get_close_matches
 from typing import TYPE_CHECKING, Any, NoReturn, TypeVar
 
@@ -30,6 +31,7 @@ __all__ = [
     "input_argument",
     "input_options",
     "json_option",
+    "naming",
     "note",
     "open_foam",
     "open_input",
@@ -208,6 +210,15 @@ def open_input(
         return open_any(path, kind=from_kind, dataset=dataset, threads=threads, notes=_noted)
 
 
+@contextmanager
+def naming(path: str) -> Iterator[None]:
+    """Errors within name the file that they are about."""
+    try:
+        yield
+    except DualizeError as error:
+        raise error.at(path) from None
+
+
 def open_foam(
     path: str, *, from_kind: str | None = None, dataset: str | None = None, threads: int | None = None
 ) -> tuple[Opened, Skeleton]:
@@ -228,7 +239,7 @@ def open_foam(
     given = open_input(path, from_kind=from_kind, dataset=dataset, threads=threads)
     if isinstance(given.content, Skeleton):
         return given, given.content
-    with progress("building"):
+    with progress("building"), naming(path):
         foam = build(given.content, keep_singular=True, points=True, threads=threads)
     return given, replace(foam, provenance=given.provenance())
 
@@ -258,6 +269,31 @@ def write_output(
 # -- what went wrong -------------------------------------------------------------------------------
 
 
+class _Closed:
+    """Stands for standard input or output where it was closed before the program started."""
+
+    closed = False
+
+    def __init__(self, name: str) -> None:
+        self._name = name
+
+    def flush(self) -> None:
+        """Nothing waits here."""
+
+    def __getattr__(self, attribute: str) -> NoReturn:
+        raise InputError(f"standard {self._name} is closed", "-", "open it, or name a file")
+
+
+def _open_standard_streams() -> None:
+    """Closed streams are None to Python: using them would be a fault, and errors would go into the data."""
+    if sys.stdin is None:
+        sys.stdin = _Closed("input")
+    if sys.stdout is None:
+        sys.stdout = _Closed("output")
+    if sys.stderr is None:
+        sys.stderr = open(os.devnull, "w")  # noqa: SIM115
+
+
 class Terminated(BaseException):
     """The signal SIGTERM, so that what is half done is undone on the way out."""
 
@@ -266,9 +302,9 @@ def guarded(work: Callable[[], int | None]) -> NoReturn:
     """Run `work` and exit with its status; any failure is told in one or two lines on standard error."""
     try:
         signal.signal(signal.SIGTERM, _terminate)
+        _open_standard_streams()
         status = work() or 0
-        if sys.stdout is not None:
-            sys.stdout.flush()
+        sys.stdout.flush()
     except BaseException as error:
         if os.environ.get("DUALIZE_DEBUG") == "1":
             traceback.print_exc()

@@ -54,7 +54,7 @@ def choose(
         )
     raise InputError(
         "no array could hold facets" + (f", among {_list(names)}" if names else ": the file holds none"),
-        hint="the labels of the facets are an array of integers with 3, 4 or 5 columns",
+        hint="the labels of the facets are an array of integers or words with 3, 4 or 5 columns",
     )
 
 

@@ -376,6 +376,11 @@ def triangulation_of(
     if unread and notes is not None and ("across" in document or "facets" in document):
         more = f" and {len(unread) - 8} more" if len(unread) > 8 else ""
         notes(f"ignored {', '.join(unread[:8])}{more}: no entries of a triangulation")
+    if "across" in document and "facets" in document:
+        raise InputError(
+            "there are both facets and a gluing table (across), and either makes a triangulation",
+            hint="keep one of them in the file",
+        )
     if "across" in document:
         t = _with_origin(_gluings(document), document)
         return t, "gluing table" if "carry" in document else "labels and neighbours"

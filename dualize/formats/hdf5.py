@@ -45,11 +45,9 @@ def read(source: Source, options: Options) -> tuple[Content, str]:
     try:
         with h5py.File(source.file, "r") as file:
             datasets = _datasets(file)
-            check_unpacked(sum(d.size * d.dtype.itemsize for d in datasets.values()), source.size)
+            check_unpacked(sum((d.size or 0) * d.dtype.itemsize for d in datasets.values()), source.size)
             known = list(datasets) + [name for name in ATTRIBUTES if name in file.attrs]
-            names = choose(
-                known, options.dataset, lambda name: (datasets[name].shape, datasets[name].dtype.kind)
-            )
+            names = choose(known, options.dataset, lambda name: _outline(datasets[name]))
             document: dict[str, Any] = {}
             for name in names:
                 document[names[name]] = (
@@ -92,6 +90,14 @@ def _datasets(file: h5py.File) -> dict[str, h5py.Dataset]:
                     raise InputError("data in another file are not read", name, "copy the data into the file")
                 found[name] = item
     return dict(sorted(found.items()))
+
+
+def _outline(dataset: h5py.Dataset) -> tuple[tuple[int, ...], str]:
+    """Shape and kind of entries, strings as ``"U"``."""
+    import h5py
+
+    text = h5py.check_string_dtype(dataset.dtype) is not None
+    return dataset.shape or (), "U" if text else dataset.dtype.kind
 
 
 def _array(dataset: h5py.Dataset, name: str) -> np.ndarray:

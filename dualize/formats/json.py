@@ -56,6 +56,12 @@ def _loads(data: bytes) -> Any:
     try:
         return loads(data)
     except orjson.JSONDecodeError as error:
+        if "UTF-8" in error.msg:
+            try:
+                data.decode()
+            except UnicodeDecodeError as wrong:
+                line = data.count(b"\n", 0, wrong.start) + 1
+                raise InputError("this is no UTF-8 text", f"line {line}", "save it as UTF-8") from None
         cut = "end of data" in error.msg or error.pos >= len(error.doc.rstrip())
         what = "the JSON text ends in the middle" if cut else f"this is no JSON: {error.msg.split(':')[0]}"
         place = f"line {error.lineno}, column {error.colno}"

@@ -50,8 +50,8 @@ def read_array(file: IO[bytes], size: int, name: str) -> np.ndarray:
         else:
             shape, fortran, dtype = np.lib.format.read_array_header_2_0(file)
         begin = file.tell()
-    except (ValueError, EOFError, SyntaxError, KeyError, TypeError, OverflowError, RecursionError) as error:
-        raise InputError(f"the header is damaged: {_first_line(error)}", name, "is the file whole?") from None
+    except (ValueError, EOFError, SyntaxError, KeyError, TypeError, OverflowError, RecursionError):
+        raise InputError("the header is damaged", name, "is the file whole?") from None
     if dtype.hasobject:
         raise InputError("it holds pickled objects, which are never read", name, "save integers")
     if dtype.kind not in "biufcUS":
@@ -79,10 +79,6 @@ def read_array(file: IO[bytes], size: int, name: str) -> np.ndarray:
                 raise InputError("the data end in the middle", name, "is the file whole?")
             got += n
     return array.reshape(shape, order="F" if fortran else "C")
-
-
-def _first_line(error: BaseException) -> str:
-    return (str(error).splitlines() or [type(error).__name__])[0][:120]
 
 
 def npy_bytes(array: np.ndarray) -> bytes:

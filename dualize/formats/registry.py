@@ -165,12 +165,12 @@ def choose_writer(path: str, kind: str | None, content: Content) -> tuple[Format
         plain = isinstance(content, Triangulation) and content.matched
         candidates, suffix = by_kind("text" if plain else "json")
     else:
-        candidates, suffix = by_suffix(path, writing=True)
+        candidates, suffix = by_suffix(path, content)
     writers = [f for f in candidates if f.write is not None]
     if not writers:
-        names = ", ".join(s for f in formats().values() if f.write is not None for s in f.suffixes)
+        names = ", ".join(_writable(content))
         raise InputError(
-            f"{suffix or candidates[0].name} can be read, not written", hint=f"these can: {names}"
+            f"{suffix or candidates[0].name} can be read, not written", path, f"these can: {names}"
         )
     return next((f for f in writers if f.suits(content)), writers[-1]), suffix
 
@@ -192,8 +192,16 @@ def by_kind(kind: str) -> tuple[list[Format], str]:
     )
 
 
-def by_suffix(path: str, writing: bool = False) -> tuple[list[Format], str]:
-    """The formats of a path's suffix, the longest suffix that is known."""
+def _writable(content: Content) -> list[str]:
+    """The suffixes of the formats that hold such a content, each once."""
+    able = [f for f in formats().values() if f.write is not None]
+    if isinstance(content, Skeleton):
+        able = [f for f in able if "skeleton" in f.holds]
+    return list(dict.fromkeys(s for f in able for s in f.suffixes))
+
+
+def by_suffix(path: str, content: Content | None = None) -> tuple[list[Format], str]:
+    """The formats of a path's suffix, the longest suffix that is known; for writing `content`, if given."""
     base = path.replace("\\", "/").rsplit("/", 1)[-1].lower()
     dots = [i for i, c in enumerate(base) if c == "."]
     for dot in dots:
@@ -206,14 +214,15 @@ def by_suffix(path: str, writing: bool = False) -> tuple[list[Format], str]:
     from difflib import get_close_matches
 
     suffix = base[dots[-1] :] if dots and dots[-1] < len(base) - 1 else ""
-    able = [f for f in formats().values() if (f.write if writing else f.read) is not None]
-    suffixes = [s for f in able for s in f.suffixes]
+    readable = [s for f in formats().values() if f.read is not None for s in f.suffixes]
+    suffixes = list(dict.fromkeys(readable)) if content is None else _writable(content)
     near = get_close_matches(suffix, suffixes, 1, 0.6) if suffix else []
     what = f"no format has the suffix {suffix}" if suffix else "the name has no suffix that tells the format"
-    option = "--to KIND" if writing else "--from KIND"
+    option = "--from KIND" if content is None else "--to KIND"
     raise InputError(
         what + (f"; is it {near[0]}?" if near else ""),
-        hint=f"known suffixes: {', '.join(suffixes)}; or name the format: {option}, kind=...",
+        None if content is None else path,
+        f"known suffixes: {', '.join(suffixes)}; or name the format: {option}, kind=...",
     )
 
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from ..errors import InputError
 
-__all__ = ["all_integers", "cells", "header_of", "integers", "line_of", "rows_of"]
+__all__ = ["INTEGER", "all_integers", "cells", "header_of", "integers", "line_of", "rows_of"]
 
 BOM = b"\xef\xbb\xbf"
 SMALL = 1 << 14  # bytes up to which lines are read one by one
@@ -93,6 +93,7 @@ def integers(
     header: bool = True,
     blank_from: int | None = None,
     separator: str | None = ",",
+    words: int = 0,
 ) -> np.ndarray:
     """The integers below the header: int64, shape (rows, width).
 
@@ -106,13 +107,15 @@ def integers(
         From this column on an empty cell stands for -1.
     separator : str or None
         ``","``, or None for blanks.
+    words : int
+        So many columns at the left hold words, and are left out.
 
     Raises
     ------
     InputError
         Naming the first line that does not fit.
     """
-    if (table := all_integers(data, width, header, separator)) is not None:
+    if not words and (table := all_integers(data, width, header, separator)) is not None:
         return table
     out: list[list[int]] = []
     for number, (line, row) in enumerate(rows_of(data), -1 if header else 0):
@@ -122,7 +125,7 @@ def integers(
             count = f"{len(row)} cell{'s' if len(row) != 1 else ''}"
             raise InputError(f"there are {count} in this line, not {width}", f"line {line}: {_show(row)}")
         values = []
-        for column, token in enumerate(row):
+        for column, token in enumerate(row[words:], words):
             if not token and blank_from is not None and column >= blank_from:
                 token = "-1"
             if not INTEGER.fullmatch(token):
@@ -130,4 +133,4 @@ def integers(
                 raise InputError(what, f"line {line}: {_show(row)}", f"column {column + 1} holds integers")
             values.append(int(token))
         out.append(values)
-    return np.array(out, dtype=np.int64).reshape(-1, width)
+    return np.array(out, dtype=np.int64).reshape(-1, width - words)

@@ -34,7 +34,7 @@ from .scan import parse_rows
 from .source import GZIP, Source
 from .target import Target
 
-__all__ = ["FORMAT", "check_words", "number_words", "parse"]
+__all__ = ["FORMAT", "check_words", "number_words", "parse", "reads_as_number"]
 
 BOM = b"\xef\xbb\xbf"
 LARGE = 1 << 17  # bytes from which the kernel reads
@@ -166,7 +166,7 @@ def scan(data: bytes) -> tuple[np.ndarray, tuple[str, ...] | None]:
         labels = np.array(values, dtype=np.int64)[rows]
     else:
         for token in index:
-            if _reads_as_number(token) and _integer(token) is None:
+            if reads_as_number(token) and _integer(token) is None:
                 raise _number_refused(data, token)
             if any(ord(c) < 32 or 127 <= ord(c) < 160 for c in token):
                 raise InputError(
@@ -240,7 +240,8 @@ def _integer(token: str) -> int | None:
     return value if -(2**63) <= value < 2**63 else None
 
 
-def _reads_as_number(token: str) -> bool:
+def reads_as_number(token: str) -> bool:
+    """Whether a word looks like a number: ``4.5``, ``1e3``, ``nan``."""
     try:
         float(token)
     except ValueError:

@@ -22,6 +22,8 @@ from typing import Any
 
 import numpy as np
 
+from ..errors import InputError
+
 __all__ = ["Engine", "engine", "mode", "random_factors", "thread_count"]
 
 # Below this many simplices interpreting is quicker than importing numba and loading compiled kernels
@@ -139,10 +141,21 @@ def random_factors(count: int) -> np.ndarray:
 
 
 def thread_count(threads: int | None = None) -> int:
-    """Threads to use: the argument, else ``DUALIZE_THREADS``, else the cores this process may use."""
+    """Threads to use: the argument, else ``DUALIZE_THREADS``, else the cores this process may use.
+
+    Raises
+    ------
+    InputError
+        If the variable is set to something else than a number from 1 on.
+    """
     if threads is None:
         text = os.environ.get("DUALIZE_THREADS", "")
-        threads = int(text) if text.isdecimal() and int(text) > 0 else len(os.sched_getaffinity(0))
+        if text and not (text.isdecimal() and int(text) > 0):
+            raise InputError(
+                f"DUALIZE_THREADS is {text!r}, not a number of threads",
+                hint="set it to 1 or more, or unset it",
+            )
+        threads = int(text) if text else len(os.sched_getaffinity(0))
     return max(1, threads)
 
 

@@ -9,7 +9,7 @@ import dualize
 from .core import lattice, whole
 from .frame import Work, case
 
-APART = ("gudhi", "foam homology", "links", "derived")
+APART = ("gudhi", "foam homology", "links", "derived", "integers", "groups")
 
 
 def _identities(facets) -> Work:

@@ -21,6 +21,7 @@ from .symmetry import best_rotation
 __all__ = ["layout", "nearest", "neighbours_of"]
 
 SYMMETRIC = 60  # nodes up to which symmetries are looked for
+UNEVEN = 0.12  # a drawing without crossings that is more uneven is worse than one with some
 RINGS = 4  # more rings than this are no clearer than springs
 
 
@@ -137,15 +138,23 @@ def _planar(n: int, simple: list[tuple[int, int]]) -> np.ndarray | None:
     good, embedding = networkx.check_planarity(graph)
     if not good:
         return None
-    flat = None
     if n > 3 and networkx.node_connectivity(graph) >= 3:
         flat = _barycentric(n, simple, embedding)
-    if flat is None:
-        flat = np.array(
-            [networkx.combinatorial_embedding_to_pos(embedding)[v] for v in range(n)], dtype=float
-        )
-        flat = _loosened(flat, simple)
-    return None if crossings(flat, simple) else flat
+        return None if crossings(flat, simple) else flat
+    # a loose graph: springs alone may do, else a drawing on a grid evened out by springs
+    flat = _springs(n, simple)
+    if not crossings(flat, simple):
+        return flat
+    grid = networkx.combinatorial_embedding_to_pos(embedding)
+    flat = _loosened(np.array([grid[v] for v in range(n)], dtype=float), simple)
+    return flat if _evenness(flat, simple) > UNEVEN and not crossings(flat, simple) else None
+
+
+def _evenness(at: np.ndarray, simple: list[tuple[int, int]]) -> float:
+    """The least distance of two nodes by the length of the longest link."""
+    pairs = np.array(simple)
+    gaps = np.linalg.norm(at[:, None] - at[None], axis=2)[np.triu_indices(len(at), 1)]
+    return float(gaps.min() / np.linalg.norm(at[pairs[:, 0]] - at[pairs[:, 1]], axis=1).max())
 
 
 def _barycentric(n: int, simple: list[tuple[int, int]], embedding: object) -> np.ndarray:

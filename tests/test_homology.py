@@ -1,13 +1,13 @@
 """Homology over the integers: published groups, duality, gudhi over fields, sympy, large coefficients."""
 
 import random
-import re
 
 import numpy as np
 import pytest
 from catalogue import CATALOGUE, NAMES, SMALL_GLUINGS
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from spaces import factors, from_table, glued, listed, over_field
 from specimens import cone, projective_plane, random_table, subcomplexes, tables
 
 from dualize import Triangulation, make
@@ -22,36 +22,6 @@ from dualize.topology.maps import simplex_maps
 
 SMALL = (2, 3)
 FIELDS = (2, 32003)  # gudhi needs a second for the latter: it tabulates inverses
-
-
-def factors(name):
-    """The invariant factors of "Z^2+Z_2"."""
-    out = []
-    for word in re.split(r"\s*\+\s*", name):
-        if match := re.fullmatch(r"Z(?:\^(\d+))?", word):
-            out += [0] * int(match[1] or 1)
-        elif word != "0":
-            out.append(int(word.removeprefix("Z_")))
-    return out
-
-
-def listed(name):
-    return Triangulation.from_facets(CATALOGUE[name].facets)
-
-
-def glued(rows):
-    return Triangulation.from_gluings([[p[0] for p in r] for r in rows], [[p[1] for p in r] for r in rows])
-
-
-def from_table(table):
-    carry = [[p if p is not None else range(len(row)) for p in row] for row in table.carry]
-    return Triangulation.from_gluings(table.across, carry, written=table.written)
-
-
-def over_field(groups, prime):
-    """Betti numbers over Z_prime by the universal coefficient theorem (Munkres 1984, section 53)."""
-    torsion = [sum(e > 0 and e % prime == 0 for e in g) for g in groups]
-    return [g.count(0) + torsion[k] + (torsion[k - 1] if k else 0) for k, g in enumerate(groups)]
 
 
 # --------------------------------------------------------------------------------------------------

@@ -19,12 +19,11 @@ def foam_presentation(skeleton: Skeleton, *, threads: int | None = None) -> list
 
     Examples
     --------
-    A Moebius band of three triangles, its dual one circle:
+    A Moebius band of five triangles, its foam one circle:
 
     >>> from dualize import Triangulation, build
-    >>> band = Triangulation.from_gluings(
-    ...     [[1, 2, -1], [2, 0, -1], [0, 1, -1]],
-    ...     [[[1, 0, 2], [1, 0, 2], [0, 1, 2]]] * 3)
+    >>> rows = [[0, 1, 2], [1, 2, 3], [2, 3, 4], [0, 3, 4], [0, 1, 4]]
+    >>> band = Triangulation.from_facets(rows)
     >>> print(foam_presentation(build(band))[0])
     <a | >
     """

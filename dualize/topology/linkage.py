@@ -83,7 +83,7 @@ def link(triangulation: Triangulation, simplex: int, corners: list[int]) -> Tria
     Examples
     --------
     >>> link(Triangulation.from_facets([[0, 1, 2, 3], [1, 2, 3, 4]]), 0, [1])
-    <Triangulation 2D: 2 simplices, 4 boundary facets>
+    <Triangulation 2D: 2 simplices, unlabelled, 4 boundary facets>
     """
     t, d = triangulation, triangulation.dimension
     chosen = sorted(set(corners))

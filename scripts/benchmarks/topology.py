@@ -1,4 +1,4 @@
-"""What space is this?  Homology over the integers, the group, the intersection form, certificates of links."""
+"""What space is this?  Homology over the integers, the group, the form, certificates of links."""
 
 from __future__ import annotations
 

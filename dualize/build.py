@@ -302,7 +302,7 @@ def _walk(work: _Work, orientation: np.ndarray, edges: _Edges) -> tuple[list[_Pa
 
     # small ranges, taken in order: most walks then find no mark that is still to come
     run.prepare(walk_ridges)
-    blocks = run.ranges(n, 1 if run.threads == 1 else max(run.threads, n // 50_000))
+    blocks = run.ranges(n, 1 if run.threads == 1 else min(8 * run.threads, max(run.threads, n // 50_000)))
     walked = run.tasks([partial(walk, lo, hi) for lo, hi in blocks])
     return [part for rings, _ in walked for part in rings], [part for _, chains in walked for part in chains]
 

@@ -240,6 +240,23 @@ def test_refusals_are_two_lines(arguments, what, hint, tmp_path):
     assert hint in said[1]
 
 
+def test_a_range_is_told_once(tmp_path):
+    said = refused(run("make", "ridge-ring", "2", cwd=tmp_path))
+    assert said == ("number is 2; it must be at least 3", "number: how many")
+
+
+@pytest.mark.parametrize("value", [2.7, True, "2.0", None], ids=repr)
+def test_numbers_that_are_no_integers_are_not_rounded(value):
+    with pytest.raises(dualize.InputError, match=r"not an integer|must be 2 to 4"):
+        make.make("torus", value)
+
+
+def test_a_long_symmetry_that_cannot_be_read_is_refused_at_once():
+    # a pattern with nested repetitions takes 2^60 steps here
+    with pytest.raises(dualize.InputError, match="cannot be read"):
+        make.make("mapping-torus", "S3", "(" + 60 * "1" + "x)")
+
+
 @pytest.mark.parametrize(
     "rows,what", [("0 0\n1 x\n", "line 2"), ("0 0\n1 1 1\n", "line 2"), ("# none\n", "no points")]
 )

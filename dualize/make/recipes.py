@@ -10,6 +10,7 @@ import re
 from collections.abc import Sequence
 from difflib import get_close_matches
 from importlib import import_module
+from operator import index
 from typing import Any, NamedTuple
 
 from ..errors import InputError
@@ -93,11 +94,14 @@ class Parameter(NamedTuple):
 
     def _integer(self, value: Any) -> int:
         try:
-            number = int(value)
+            number = int(value) if isinstance(value, str) else index(value)
         except (TypeError, ValueError):
             raise InputError(f"{self.name} is {value!r}, not an integer", hint=self._hint()) from None
         if (self.low is not None and number < self.low) or (self.high is not None and number > self.high):
-            raise InputError(f"{self.name} is {number}; it must be {self.range}", hint=self._hint())
+            # the range is in the sentence: what is left to say is what the number is for
+            raise InputError(
+                f"{self.name} is {number}; it must be {self.range}", hint=f"{self.name}: {self.meaning}"
+            )
         return number
 
     def _hint(self) -> str:
@@ -290,7 +294,7 @@ _TABLE = [
         "families.lens_space",
         "L(p, q) from p tetrahedra, or as a simplicial complex of 96 p",
         (
-            _integer("p", "at least 1", ..., 1),
+            _integer("p", "number of tetrahedra", ..., 1),
             _integer("q", "coprime to p", ..., 0),
             Parameter("simplicial", "flag", "a simplicial complex, not a gluing table", False, option=True),
         ),
@@ -523,7 +527,7 @@ def _split(text: str) -> list[str]:
 
 def _cycles(text: str) -> dict[int, int]:
     """The images of the labels that cycles such as ``(0 1 2)(3 4)`` move."""
-    if not re.fullmatch(r"\s*(\(\s*(\d+[\s,]*)*\)\s*)*", text):
+    if not re.fullmatch(r"\s*(?:\([\d\s,]*\)\s*)*", text):
         raise InputError(
             f"the symmetry {text!r} cannot be read", hint="write cycles of labels: '(0 1 2)(3 4)'"
         )

@@ -7,8 +7,9 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..audit import Finding
+from ..certificates import NEITHER, UNDECIDED
 from ..topology.geometry import shapes
-from ..topology.links import Links
+from ..topology.integral import abelian_name
 from .subject import LINK_LIMIT, Subject, named
 
 __all__ = ["check_coordinates", "check_links", "check_space"]
@@ -37,12 +38,8 @@ def _offenders(x: Subject) -> list[str]:
     for y, factors in links.homology.items():
         if factors:
             who = x.simplex_name(1, x.census.classes[0].first[y])
-            out.append((-len(factors), f"point {who}: H_1 = {_group(factors)}"))
+            out.append((-len(factors), f"point {who}: H_1 = {abelian_name(factors)}"))
     return [text for _, text in sorted(out, key=lambda pair: pair[0])]
-
-
-def _group(factors: list[int]) -> str:
-    return " + ".join("Z" if f == 0 else f"Z_{f}" for f in factors)
 
 
 def check_links(x: Subject) -> Iterator[Finding]:
@@ -65,13 +62,14 @@ def check_links(x: Subject) -> Iterator[Finding]:
     }[x.d]
     if bad:
         what = f"{len(bad)} links are no homology spheres or balls"
-        yield Finding("homology-manifold", "property", "no", what, source, where)
-        yield Finding("manifold", "property", "no", what, source, where)
+        every = tuple(bad)
+        yield Finding("homology-manifold", "property", "no", what, source, where, every)
+        yield Finding("manifold", "property", "no", what, source, where, every)
     else:
         yield Finding(
             "homology-manifold", "property", "yes", "all links are homology spheres or balls", source
         )
-        yield _manifold(x, links)
+        yield _manifold(x)
     figure: dict[str, object] = {}
     for m in range(1, x.d - 1):
         touched = links.boundary[m - 1]
@@ -92,34 +90,35 @@ def check_links(x: Subject) -> Iterator[Finding]:
     )
 
 
-def _manifold(x: Subject, links: Links) -> Finding:
+def _manifold(x: Subject) -> Finding:
     """A homology manifold: is it a manifold?"""
+    name, kind = "manifold", "property"
     if x.d < 4:
-        return Finding(
-            "manifold",
-            "property",
-            "yes",
-            "all links are spheres or balls",
-            "decided in this dimension by homology",
-        )
-    open_points = list(links.homology)
-    if open_points:
-        where = named([f"point {x.simplex_name(1, x.census.classes[0].first[y])}" for y in open_points])
-        return Finding(
-            "manifold",
-            "property",
-            "undecided",
-            f"{len(open_points)} links are homology spheres or balls whose fundamental group is not decided",
-            "homology is only necessary here: not checked whether these links are spheres",
-            where,
-        )
-    return Finding(
-        "manifold",
-        "property",
-        "yes",
-        "all links of points are simply connected",
-        "so spheres or balls by the Poincaré theorem; homology alone is necessary, not enough",
+        what = "all links are spheres or balls"
+        return Finding(name, kind, "yes", what, "decided in this dimension by homology")
+    verdicts = x.verdicts
+    for code, verdict in ((NEITHER, "no"), (UNDECIDED, "undecided")):
+        points = np.flatnonzero(verdicts.kind[0] == code).tolist()
+        if not points:
+            continue
+        who = [
+            f"point {x.simplex_name(1, x.census.classes[0].first[y])}: {verdicts.reason(1, y)}"
+            for y in points
+        ]
+        if code == NEITHER:
+            what = f"{len(points)} links are homology spheres or balls, but no spheres or balls"
+            against = "fundamental groups of the links; homology alone does not tell"
+        else:
+            what = f"{len(points)} links are homology spheres or balls, neither shown to be more nor excluded"
+            against = "bistellar moves, fundamental groups and their homomorphisms to A5 and PSL(2,7)"
+        return Finding(name, kind, verdict, what, against, named(who), tuple(who))
+    by_moves = np.array([bool(c.stages) for c in verdicts.certificates] + [False])[verdicts.which]
+    what = (
+        f"all links are spheres or balls, {int(by_moves.sum())} of {len(by_moves)} shown by bistellar moves"
     )
+    if not by_moves.all():
+        what += ", the others by their trivial groups (Poincaré theorem)"
+    return Finding(name, kind, "yes", what, "certificates of the links of points; surfaces are classified")
 
 
 def check_space(x: Subject) -> Iterator[Finding]:

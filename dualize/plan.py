@@ -38,9 +38,10 @@ __all__ = ["Plan", "plan"]
 # beyond these a part of the page is left out, and the page says so
 RAY_DIMENSION = 40  # dimension of a cone whose rays are looked for
 RELATED_BUBBLES = 20_000  # bubbles whose relations are looked for
-LISTED = 200_000  # labellings whose work list is made
+LISTED = 50_000  # labellings whose work list is made
 NETWORK_VERTICES = 300  # vertices of a network whose order is looked for
 EXACT_SIZE = 300_000  # internal faces whose boundary map is eliminated over Q
+QUICK_STEPS = 100_000_000  # of a count: about a second
 SHOWN = 12  # numbers shown in a row
 
 METHODS = {
@@ -291,7 +292,8 @@ def _sum(rules: Rules, cutoff: int | None) -> dict[str, Any]:
         "cost": {"width": cost.width, "largest": cost.largest, "steps": cost.steps, "bytes": cost.bytes},
         "counts": [],
     }
-    first = max(0, cutoff - 8)
+    # the cutoffs before the last one only where that is quick
+    first = max(0, cutoff - 8) if cost.steps < QUICK_STEPS else cutoff
     try:
         for n in range(first, cutoff + 1):
             row = {

@@ -86,9 +86,8 @@ def boundaries(skeleton, number=3, seed=0, step=1):
         return out
     pool = [np.full(links, step), np.full(links, 2 * step)]
     if skeleton.dimension > 2:
-        pool += list(step * rng.integers(0, 4, (40_000, links)))
-    for row in pool:
-        at = row[nodes]
-        if ((at.sum(1) % 2 == 0) & (2 * at.max(1) <= at.sum(1))).all() and len(out) < number:
-            out.append(row)
-    return out
+        pool.insert(1, 2 * step * rng.integers(1, 3, links))  # fits any node
+        pool = np.concatenate([pool, step * rng.integers(0, 4, (4000, links))])
+    at = np.array(pool)[:, nodes]
+    good = ((at.sum(2) % 2 == 0) & (2 * at.max(2) <= at.sum(2))).all(1)
+    return out + [pool[n] for n in np.flatnonzero(good)[: number - 1]]

@@ -261,6 +261,16 @@ def test_estimate_is_maximal_on_the_whole_cone():
     assert every.cone_faces > 7
 
 
+def test_estimate_counts_edges_whose_spins_all_grow():
+    """Two 4-simplices on one another: dimension 10, ten growing spins, five edges of four."""
+    rules = spins.rules_of(dualize.build(make.shared_pair(5, 4)))
+    whole = spins.estimate(rules, 1)
+    assert (whole.degree, whole.edges) == (25, 5)
+    # a single surface of three faces: at each of its edges two spins grow, and they are equal
+    only = frozenset(np.flatnonzero(spins.growth_rays(rules).vectors[0]).tolist())
+    assert spins.estimate(rules, -9, lambda growing: 90.0 if growing == only else 0.0).edges == 0
+
+
 def test_estimate_with_exponents_picks_another_face():
     """One pair of rays of the melon: with a heavy price for each spin that grows, nothing grows."""
     rules = spins.rules_of(dualize.build(make.shared_pair(4, 4)))

@@ -5,6 +5,7 @@ import json
 
 import networkx
 import numpy as np
+import opt_einsum
 import pytest
 import specimens as sp
 from reference import glue_by_labels
@@ -368,8 +369,15 @@ def test_slices_add_up(memory):
         total += contract_by(plan.path, parts, names)
     assert total == pytest.approx(float(expected))
     assert plan.slices == 2 ** len(plan.sliced)
+    shapes = [t.shape for t in parts]
+    _, info = opt_einsum.contract_path(opt_einsum_text(names), *shapes, shapes=True, optimize=list(plan.path))
+    assert plan.flops == plan.slices * info.opt_cost
     if memory is not None:
         assert plan.sliced and 8 * plan.peak <= memory
+
+
+def opt_einsum_text(names):
+    return ",".join("".join(map(opt_einsum.get_symbol, axes)) for axes in names) + "->"
 
 
 def contract_by(path, tensors, names):

@@ -276,10 +276,14 @@ class _Peeled:
         self._spread(parity, right)
         for mix in self.idle:
             if self._mixed(mix, lack):
-                return None, self._contradiction([e for x, e in enumerate(self.checked) if mix >> x & 1])
-        for e in self.rest:
+                return None, self._contradiction(self._edges_of(mix))
+        for e in self.rest:  # those of the forest agree, unless the boundary breaks the rule of a node
             if self._sum(e, parity) != right[e]:
-                return None, self._contradiction([e])
+                need, mix = self._over_free([e]), 0
+                for bit, (_, other) in self.pivots.items():
+                    if need[self.free[bit]]:
+                        mix ^= other
+                return None, self._contradiction([e, *self._edges_of(mix)])
         return np.array(parity, dtype=np.int8), None
 
     def _contradiction(self, edges: list[int]) -> tuple[int, ...]:
@@ -290,6 +294,10 @@ class _Peeled:
         for e, mask in used:
             count[e] = count.get(e, 0) ^ (mask.bit_count() & 1)
         return tuple(sorted(e for e, odd in count.items() if odd))
+
+    def _edges_of(self, mix: int) -> list[int]:
+        """The edges of a combination."""
+        return [e for x, e in enumerate(self.checked) if mix >> x & 1]
 
     def _sum(self, edge: int, parity: list[int]) -> int:
         value = 0

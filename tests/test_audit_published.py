@@ -23,7 +23,7 @@ from specimens import (
 )
 
 import dualize
-from dualize import Triangulation
+from dualize import Triangulation, make
 from dualize.audit import audit
 
 LARGE = {"cell600", "kuhn_t4_n3"}  # gudhi takes a second over each: their figures are in `test_topology`
@@ -290,6 +290,23 @@ def test_charts_of_single_simplices_are_compared_after_translation():
     bent[7, 2] += 0.1
     report = audit(Triangulation.from_facets(facets, coordinates=dualize.Coordinates(corner=bent)))
     assert "different edges in their two charts" in report["sides"].figure
+
+
+TWISTED = {
+    "exchange": ("z=yx", "paths", 18),
+    "inversion": ("z=-x-y", "coned", 18),
+    "reflection": ("z=-xy", "barycentric", 72),
+}
+
+
+@pytest.mark.parametrize("twist, variant, facets", TWISTED.values(), ids=TWISTED)
+def test_a_twisted_seam_raises_no_alarm_but_tells_no_sides(twist, variant, facets):
+    # the seam is a square of 3 x 3 squares, in 2 triangles each, 8 when subdivided; see make.lattice
+    t = make.lattice(3, 3, 3, periodic="xyz", twist=twist, variant=variant)
+    report = audit(t)
+    assert report["volumes"].verdict == "yes"
+    assert report["sides"].verdict == "undecided"
+    assert f"{facets} facets lie in charts turned" in report["sides"].figure
 
 
 @pytest.mark.parametrize(

@@ -205,6 +205,12 @@ def check_coordinates(x: Subject) -> Iterator[Finding]:
         where = named([f"slot {i} of {x.place(v)}" for v, i in found.folded[:10].tolist()], len(found.folded))
         what = f"{len(found.folded)} facets have both neighbours on one side"
         yield Finding("sides", "property", "no", what, against, where)
+    elif len(found.turned):
+        where = named([f"slot {i} of {x.place(v)}" for v, i in found.turned[:10].tolist()], len(found.turned))
+        what = (
+            f"opposite, but {len(found.turned)} facets lie in charts turned against each other, as at a twist"
+        )
+        yield Finding("sides", "property", "undecided", what, against, where)
     elif flat:
         yield Finding("sides", "property", "undecided", "opposite wherever there is a volume", against)
     else:

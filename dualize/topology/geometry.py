@@ -2,7 +2,8 @@
 
 Only differences within one simplex are taken, so a seam of a periodic chart raises no alarm: with one chart
 for all and a period they are brought to the nearest image, and with a chart for each simplex neighbours are
-compared after translation.
+compared after translation.  Charts that are turned against each other as well, as at a twisted seam, do not
+tell sides: any facet of the right shape can be put on the other's far side by a reflection.
 """
 
 from __future__ import annotations
@@ -32,7 +33,9 @@ class Shapes(NamedTuple):
         Half-facets ``(simplex, slot)`` whose two simplices lie on the same side; None unless there are as
         many axes as dimensions.  Flat simplices have no side and are left out.
     apart : ndarray of int64, shape (m, 2)
-        Half-facets whose corners have other differences in the two charts.
+        Half-facets whose edges have other lengths in the two charts.
+    turned : ndarray of int64, shape (m, 2)
+        Half-facets of the same shape in both charts, in another direction: `folded` leaves them out.
     smallest, largest : float
         Smallest and largest volume, without sign.
     """
@@ -41,6 +44,7 @@ class Shapes(NamedTuple):
     flat: np.ndarray
     folded: np.ndarray | None
     apart: np.ndarray
+    turned: np.ndarray
     smallest: float
     largest: float
 
@@ -77,7 +81,7 @@ def shapes(triangulation: Triangulation, points: np.ndarray | None = None) -> Sh
     scale = np.linalg.norm(edges, axis=2).prod(axis=1)
     flat = ~(np.abs(volume) > FLAT * scale)
     corners = np.concatenate([np.zeros_like(edges[:, :1]), edges], axis=1)  # each chart moved to corner 0
-    apart, folded = [], []
+    apart, turned, folded = [], [], []
     image = permutations_of(d).image
     for i in range(d + 1):
         here = np.flatnonzero(t.across[:, i] >= 0)
@@ -88,10 +92,15 @@ def shapes(triangulation: Triangulation, points: np.ndarray | None = None) -> Sh
         others = [c for c in range(d + 1) if c != i]
         mine = corners[here][:, others]
         theirs = corners[there[:, None], carried[:, others]]
-        gap = _nearest((mine - mine[:, :1]) - (theirs - theirs[:, :1]), period)
-        size = np.abs(mine - mine[:, :1]).max(axis=(1, 2))
+        mine, theirs = (_nearest(x - x[:, :1], period) for x in (mine, theirs))
+        gap = _nearest(mine - theirs, period)
+        size = np.abs(mine).max(axis=(1, 2))
         wide = np.abs(gap).max(axis=(1, 2)) > 1e-9 * size
-        apart.append(np.column_stack([here[wide], np.full(int(wide.sum()), i)]))
+        # the products of all edges at one corner are the shape
+        bent = np.abs(mine @ mine.swapaxes(1, 2) - theirs @ theirs.swapaxes(1, 2)).max(axis=(1, 2))
+        other = wide & (bent > 1e-9 * size**2)
+        apart.append(np.column_stack([here[other], np.full(int(other.sum()), i)]))
+        turned.append(np.column_stack([here[wide & ~other], np.full(int((wide & ~other).sum()), i)]))
         if axes == d:
             sign = permutations_of(d).sign[t.rank[here, i]]
             same = np.sign(volume[here]) * np.sign(volume[there]) * sign > 0
@@ -103,6 +112,7 @@ def shapes(triangulation: Triangulation, points: np.ndarray | None = None) -> Sh
         np.flatnonzero(flat),
         np.concatenate(folded) if axes == d else None,
         np.concatenate(apart),
+        np.concatenate(turned),
         float(size.min()),
         float(size.max()),
     )

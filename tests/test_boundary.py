@@ -203,6 +203,15 @@ def test_the_verb_writes_the_graph_with_orders_and_directions(tmp_path, kind):
     assert nx.utils.graphs_equal(nx.MultiDiGraph(graph), nx.MultiDiGraph(whole.subgraph(part)))
 
 
+def test_a_graphml_file_holds_the_graph(tmp_path):
+    mesh, out = tmp_path / "mesh.txt", tmp_path / "graph.graphml"
+    np.savetxt(mesh, slab(sphere(3)), fmt="%d")
+    done = run("boundary", mesh, "-o", out)
+    assert done.returncode == 0, done.stderr
+    whole = dualize.build(dualize.read(mesh)).boundary_graph()
+    assert nx.utils.graphs_equal(nx.MultiDiGraph(dualize.read_export(out, "graphml")), nx.MultiDiGraph(whole))
+
+
 @pytest.mark.parametrize(
     "facets, options, message",
     [

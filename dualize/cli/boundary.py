@@ -41,7 +41,8 @@ __all__ = ["command"]
 @click.option(
     "--graph",
     type=click.Choice(["graphml", "node-link"]),
-    help="Write the graph of nodes and links, with orders and directions, instead of the triangulation.",
+    help="Write the graph of nodes and links, with orders and directions, instead of the triangulation; "
+    "graphml for an output FILE.graphml.",
 )
 @threads_option
 @quiet_option
@@ -63,6 +64,8 @@ def command(
     """
     given = open_input(path, from_kind=from_kind, dataset=dataset, threads=threads)
     content = given.content
+    if graph is None and to_kind is None and output.lower().endswith(".graphml"):
+        graph = "graphml"
     if graph is not None:
         if to_kind is not None:
             raise InputError("--graph names the format already", hint="leave --to out")

@@ -233,4 +233,4 @@ if __name__ == "__main__":
     try:
         main()
     except (KeyError, OSError, ValueError) as error:
-        raise SystemExit(f"error: {error!r}") from None
+        raise SystemExit(f"error: {type(error).__name__}: {error}") from None

@@ -454,10 +454,12 @@ def test_a_failure_in_the_middle_leaves_no_trace(tmp_path, monkeypatch):
     ("pictures", "x", {}, "there is no export as 'pictures'"),
     ("dot", "x", {"graph": "primal"}, "there is no 'primal' graph"),
     ("dot", "x", {"axes": [0]}, "dot has no coordinates"),
+    ("tables", "x", {"graph": "boundary"}, "tables is no graph, so there is none to choose"),
+    ("vtk", "x.vtk", {"graph": "dual"}, "vtk is no graph, so there is none to choose"),
     ("tables", "-", {}, "standard output cannot be"),
     ("tables", "no/such/place", {}, "there is no such directory"),
     ("vtk", "x.png", {}, "ends with .vtk or .vtu"),
-], ids=["kind", "graph", "axes", "stdout", "parent", "suffix"])  # fmt: skip
+], ids=["kind", "graph", "axes", "no-graph", "mesh", "stdout", "parent", "suffix"])  # fmt: skip
 def test_wrong_requests_are_refused(kind, path, options, message, tmp_path):
     with pytest.raises(InputError, match=message):
         export(grid((1, 1)), path if path == "-" else tmp_path / path, kind, **options)

@@ -241,6 +241,15 @@ def test_wrong_spins_end_in_one_sentence(reader, arguments, message, tmp_path):
     assert done.returncode == 1 and done.stderr.startswith(message) and "Traceback" not in done.stderr
 
 
+@pytest.mark.parametrize("reader", [
+    "amplitude_projectors.py", "amplitude_symbols.py", "count_flat.py", "turaev_viro.py",
+])  # fmt: skip
+def test_a_missing_file_is_named(reader):
+    done = subprocess.run([sys.executable, SCRIPTS / reader, "none.json"], capture_output=True, text=True)
+    assert done.returncode == 1
+    assert done.stderr.startswith("error: FileNotFoundError") and "'none.json'" in done.stderr
+
+
 def test_odd_spins_at_a_node_leave_an_empty_axis():
     """Three spins 1/2 have no invariant: the tensor has no entries."""
     skeleton = build(Triangulation.from_facets(sp.simplex(3)))

@@ -39,9 +39,7 @@ def _axes(ctx: click.Context, parameter: click.Parameter, value: str | None) -> 
     metavar="PATH",
     help="Where to write; - is standard output (graphs only).",
 )
-@click.option(
-    "--of", "graph", default="dual", show_default=True, metavar="GRAPH", help="Which graph: dual or boundary."
-)
+@click.option("--of", "graph", metavar="GRAPH", help="Which graph: dual (by default) or boundary.")
 @click.option("--axes", callback=_axes, metavar="A,B,C", help="vtk: the axes to show (0,1,2 by default).")
 @click.option(
     "--projection",
@@ -55,7 +53,7 @@ def command(
     from_kind: str | None,
     kind: str,
     output: str,
-    graph: str,
+    graph: str | None,
     axes: list[int] | None,
     projection: str | None,
     force: bool,

@@ -74,6 +74,8 @@ KINDS = {
     ),
 }
 
+GRAPHS = ("graphml", "node-link", "dot")
+
 
 def export(
     skeleton: Skeleton,
@@ -81,7 +83,7 @@ def export(
     kind: str,
     *,
     force: bool = False,
-    graph: str = "dual",
+    graph: str | None = None,
     axes: Sequence[int] | None = None,
     projection: np.ndarray | None = None,
 ) -> None:
@@ -96,8 +98,8 @@ def export(
         ``tables``, ``matrices``, ``graphml``, ``node-link``, ``dot``, ``vtk`` or ``einsum``.
     force : bool
         Replace an existing file, or an existing directory that holds such an export and nothing else.
-    graph : str
-        ``dual`` or ``boundary``: the graph to write.
+    graph : str, optional
+        ``dual`` (the default) or ``boundary``: which graph ``graphml``, ``node-link`` and ``dot`` write.
     axes : sequence of int, optional
         Up to three axes of the coordinates that ``vtk`` shows; the first three by default.
     projection : array_like of float, shape (3, A), optional
@@ -126,6 +128,10 @@ def export(
     form = _kind(kind)
     if kind != "vtk" and (axes is not None or projection is not None):
         raise InputError(f"{kind} has no coordinates, so axes and projections do not apply to it")
+    if graph is not None and kind not in GRAPHS:
+        raise InputError(
+            f"{kind} is no graph, so there is none to choose", hint=f"graphs are {', '.join(GRAPHS)}"
+        )
     if form.folder:
         module = tables if kind == "tables" else matrices
         if name == "-":
@@ -141,7 +147,7 @@ def export(
             "node-link": graphs.node_link_lines,
             "dot": graphs.dot_lines,
         }
-        _write_lines(lines[kind](graphs.graph_of(skeleton, graph)), name, force)
+        _write_lines(lines[kind](graphs.graph_of(skeleton, graph or "dual")), name, force)
 
 
 def read_export(path: str | PathLike[str], kind: str) -> Any:

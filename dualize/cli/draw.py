@@ -46,7 +46,9 @@ def _numbers(count: int | None, what: str, kind: type) -> object:
     help="The vertex or face; or the node or vertex around which a large graph is drawn.",
 )
 @click.option("--component", type=int, metavar="N", help="boundary: this component only.")
-@click.option("--most", type=int, metavar="N", help="At most so many nodes or vertices (60 by default).")
+@click.option(
+    "--most", type=int, metavar="N", help="At most so many nodes or vertices (60 by default, in space 24)."
+)
 @click.option(
     "--axes",
     callback=_numbers(None, "numbers such as 0,1,3", int),

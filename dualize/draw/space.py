@@ -25,7 +25,7 @@ def foam_in_space(
     skeleton: Skeleton,
     *,
     number: int | None = None,
-    most: int = 60,
+    most: int = 24,
     axes: Sequence[int] | None = None,
     projection: np.ndarray | None = None,
     view: tuple[float, float] = VIEW,

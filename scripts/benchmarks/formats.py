@@ -13,7 +13,7 @@ from .core import lattice, whole
 from .frame import Work, case
 
 
-@case("read text, periodic 8^4", "numpy.loadtxt of the file", ratio=1.0, stretch=0.5, seconds=1.0)
+@case("read text and match, periodic 8^4", "numpy.loadtxt of the file", seconds=1.0)
 def text(folder: Path) -> Work:
     path = folder / "lattice.txt"
     np.savetxt(path, lattice(8), fmt="%d")

@@ -71,6 +71,16 @@ LIES = {
 }
 
 
+@pytest.mark.parametrize(
+    "integral_groups",
+    [[[0], [2], [0], [0]], [[0], [0, 2], [], [0]]],
+    ids=["one more free group in dimension 2", "in dimension 1"],
+)
+def test_free_parts_that_are_not_dual_violate_duality(integral_groups):
+    found = found_by(integral.check_integral, listed("rp3_11"), integral=integral_groups)
+    assert found["integral-duality"].verdict == "violated"
+
+
 @pytest.mark.parametrize("name", LIES)
 def test_figures_that_do_not_fit_violate_the_identity(name):
     check, where, figures = LIES[name]

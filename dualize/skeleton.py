@@ -323,7 +323,7 @@ class Skeleton:
             ``boundary``, ``dual``, ``vertex``, ``face``, ``degrees`` or ``space``; by default the boundary
             graph, or the dual graph where there is no boundary.
         **options
-            ``number``, ``most``, ``component``, ``axes``, ``projection``, ``view``: see `dualize.draw.sketch`.
+            ``number``, ``most``, ``component``, ``axes``, ``projection``, ``view``: `dualize.draw.sketch`.
 
         Returns
         -------

@@ -310,7 +310,8 @@ def test_wide_histograms_are_put_into_bins_that_lose_nothing():
 
 def test_in_space_vertices_lie_in_the_middles_of_their_simplices():
     s = foam("room_3d.vtk")
-    made = sketch(s, "space", view=(0.0, 90.0), most=48)  # from above: second axis to the right, first downwards
+    # from above: the second axis to the right, the first downwards
+    made = sketch(s, "space", view=(0.0, 90.0), most=48)
     at = np.array([badges(made, "vertex")[v].at for v in range(48)])
     middle = s["coordinates/point"][s["vertices/corners"]].mean(axis=1)[:, :2] @ np.array([[0, -1], [1, 0]])
     scale = np.ptp(at[:, 0]) / np.ptp(middle[:, 0])

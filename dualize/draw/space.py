@@ -96,7 +96,7 @@ def foam_in_space(
             look = "segment" if flat or depth >= middle else "far segment"
             deep.append((depth, Curve(straight(row[a, :2], row[b, :2]), look)))
     twist = s["edges/twist"]
-    size = 6.5 if len(shown) <= 20 else 4.6 if len(shown) <= 60 else 3.0
+    size = 6.5 if len(shown) <= 16 else 5.6 if len(shown) <= 30 else 4.6 if len(shown) <= 60 else 3.0
     named = len(shown) <= 60
     for x, v in enumerate(shown.tolist()):
         for slot, (e, leaves) in enumerate(s.edges_at(v)):

@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from .export import export, read_export
     from .formats import load, read
     from .match import Match, match
+    from .plan import plan
     from .skeleton import Skeleton
     from .triangulation import Coordinates, Triangulation
 
@@ -50,6 +51,7 @@ _HOMES = {
     "export": "export",
     "load": "formats",
     "match": "match",
+    "plan": "plan",
     "read": "formats",
     "read_export": "export",
 }
@@ -78,6 +80,7 @@ __all__ = [
     "load",
     "make",
     "match",
+    "plan",
     "read",
     "read_export",
     "report",

@@ -17,7 +17,7 @@ def test_importing_the_package_imports_no_library():
     assert fresh(code).split() == []
 
 
-@pytest.mark.parametrize("name", ["audit", "build", "export", "match"])
+@pytest.mark.parametrize("name", ["audit", "build", "export", "match", "plan"])
 def test_a_function_stays_one_whatever_is_imported_first(name):
     assert fresh(f"import dualize.{name}; print(callable(dualize.{name}))") == "True\n"
 

@@ -20,12 +20,14 @@ import numpy as np
 from ..coloured import colour_number, coloured_edges, from_coloured_edges, order_of_vertices
 from ..errors import InputError
 from ..triangulation import Triangulation
-from .registry import Content, Format, Options
+from .registry import Content, Format, Options, dropping
 from .source import Source
 from .table import all_integers, cells, header_of, line_of, rows_of
 from .target import Target
 
-__all__ = ["FORMAT", "drops", "note_absent"]
+__all__ = ["DROPS", "FORMAT", "note_absent"]
+
+DROPS = dropping("the labels", "the coordinates", "the orientation signs")
 
 HEADERS = (["source", "target", "colour"], ["source", "target", "color"])
 
@@ -117,18 +119,6 @@ def suits(content: Content) -> bool:
     return isinstance(content, Triangulation) and content.coloured
 
 
-def drops(content: Content) -> list[str]:
-    """What is not written."""
-    if not isinstance(content, Triangulation):
-        return []
-    lost = {
-        "the labels": content.corners is not None,
-        "the coordinates": content.coordinates is not None,
-        "the orientation signs": bool((content.written < 0).any()),
-    }
-    return [what for what, there in lost.items() if there]
-
-
 FORMAT = Format(
     name="coloured-csv",
     suffixes=(".csv",),
@@ -138,5 +128,5 @@ FORMAT = Format(
     write=write,
     packed=True,
     suits=suits,
-    drops=drops,
+    drops=DROPS,
 )

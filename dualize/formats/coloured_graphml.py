@@ -18,7 +18,7 @@ import numpy as np
 from ..coloured import ATTRIBUTES, colour_number, coloured_edges, from_coloured_edges, order_of_vertices
 from ..errors import InputError
 from ..triangulation import Triangulation
-from .coloured_csv import drops, note_absent
+from .coloured_csv import DROPS, note_absent
 from .registry import Content, Format, Options
 from .source import Source
 from .target import Target
@@ -154,5 +154,5 @@ FORMAT = Format(
     write=write,
     packed=True,
     suits=suits,
-    drops=drops,
+    drops=DROPS,
 )

@@ -20,7 +20,7 @@ import numpy as np
 from ..errors import InputError
 from ..kernels.permutations import permutations_of
 from ..triangulation import Triangulation
-from .registry import Content, Format, Options
+from .registry import Content, Format, Options, dropping
 from .source import Source
 from .table import cells, header_of, integers, line_of
 from .target import Target
@@ -151,19 +151,6 @@ def suits(content: Content) -> bool:
     return isinstance(content, Triangulation) and not content.matched and not content.coloured
 
 
-def drops(content: Content) -> list[str]:
-    """What is not written."""
-    if not isinstance(content, Triangulation):
-        return []
-    lost = {
-        "the labels": content.corners is not None,
-        "the coordinates": content.coordinates is not None,
-        "the orientation signs": bool((content.written < 0).any()),
-        "that it is a coloured graph": content.coloured,
-    }
-    return [what for what, there in lost.items() if there]
-
-
 FORMAT = Format(
     name="gluing-csv",
     suffixes=(".csv",),
@@ -173,5 +160,5 @@ FORMAT = Format(
     write=write,
     packed=True,
     suits=suits,
-    drops=drops,
+    drops=dropping("the labels", "the coordinates", "the orientation signs", "that it is a coloured graph"),
 )

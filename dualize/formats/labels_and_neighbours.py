@@ -21,7 +21,7 @@ import numpy as np
 
 from ..errors import InputError
 from ..triangulation import Triangulation
-from .registry import Content, Format, Options
+from .registry import Content, Format, Options, dropping
 from .source import Source
 from .table import INTEGER, all_integers, integers, rows_of
 from .target import Target
@@ -120,18 +120,6 @@ def _plain(words: tuple[str, ...]) -> bool:
     )
 
 
-def drops(content: Content) -> list[str]:
-    """What is not written."""
-    if not isinstance(content, Triangulation):
-        return []
-    lost = {
-        "the coordinates": content.coordinates is not None,
-        "the orientation signs": bool((content.written < 0).any()),
-        "that labels name simplices": content.matched,
-    }
-    return [what for what, there in lost.items() if there]
-
-
 FORMAT = Format(
     name="labels-and-neighbours",
     suffixes=(),
@@ -141,5 +129,5 @@ FORMAT = Format(
     write=write,
     packed=True,
     sure=False,
-    drops=drops,
+    drops=dropping("the coordinates", "the orientation signs", "that labels name simplices"),
 )

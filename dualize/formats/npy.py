@@ -10,7 +10,7 @@ import numpy as np
 from ..errors import InputError
 from ..skeleton import Skeleton
 from .document import content_of, document_of
-from .registry import Content, Format, Options, drops_coordinates
+from .registry import Content, Format, Options, dropping
 from .source import Source
 from .target import Target
 
@@ -107,5 +107,5 @@ FORMAT = Format(
     sniff=sniff,
     read=read,
     write=write,
-    drops=drops_coordinates,
+    drops=dropping("the coordinates"),
 )

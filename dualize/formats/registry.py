@@ -17,7 +17,7 @@ from ..triangulation import Triangulation
 from .source import GZIP, Source
 from .target import Target
 
-__all__ = ["Content", "Format", "Options", "choose_reader", "choose_writer", "drops_coordinates", "formats"]
+__all__ = ["Content", "Format", "Options", "choose_reader", "choose_writer", "dropping", "formats"]
 
 Content = Triangulation | Skeleton
 
@@ -95,10 +95,18 @@ class Format(NamedTuple):
     drops: Callable[[Content], list[str]] = lambda content: []
 
 
-def drops_coordinates(content: Content) -> list[str]:
-    """For formats of labels alone."""
-    there = isinstance(content, Triangulation) and content.coordinates is not None
-    return ["the coordinates"] if there else []
+LOSSES: dict[str, Callable[[Triangulation], bool]] = {
+    "the labels": lambda t: t.corners is not None,
+    "the coordinates": lambda t: t.coordinates is not None,
+    "the orientation signs": lambda t: bool((t.written < 0).any()),
+    "that it is a coloured graph": lambda t: t.coloured,
+    "that labels name simplices": lambda t: t.matched,
+}
+
+
+def dropping(*what: str) -> Callable[[Content], list[str]]:
+    """What a format leaves out of a triangulation, of the things that it cannot hold (see `LOSSES`)."""
+    return lambda content: [x for x in what if isinstance(content, Triangulation) and LOSSES[x](content)]
 
 
 @cache

@@ -29,7 +29,7 @@ from ..errors import InputError
 from ..kernels import engine
 from ..skeleton import Skeleton
 from ..triangulation import Triangulation
-from .registry import Content, Format, Options, drops_coordinates
+from .registry import Content, Format, Options, dropping
 from .scan import parse_rows
 from .source import GZIP, Source
 from .target import Target
@@ -368,5 +368,5 @@ FORMAT = Format(
     read=read,
     write=write,
     packed=True,
-    drops=drops_coordinates,
+    drops=dropping("the coordinates"),
 )

@@ -29,7 +29,7 @@ from specimens import (
 
 import dualize
 from dualize import Triangulation
-from dualize.match import match
+from dualize.match import boundary_map, match
 
 
 def run(*arguments):
@@ -199,6 +199,43 @@ def test_different_boundaries_do_not_match():
 def test_limit_bounds_the_number_of_maps():
     s = built(simplex(4))
     assert [len(match(s, s, by="isomorphism", limit=n)) for n in (1, 7, 120, 500)] == [1, 7, 120, 120]
+
+
+# --------------------------------------------------------------------------------------------------
+# Maps that are given
+
+
+def given_map(recipe, change):
+    """The boundary of a recipe mapped to itself: nodes and places of the identity, after `change`."""
+    foam = dualize.build(dualize.make.evaluate(recipe))
+    count = len(foam["nodes/edge"])
+    nodes, places = np.arange(count), np.tile(np.arange(foam.dimension), (count, 1))
+    change(nodes, places)
+    return boundary_map(foam, foam, nodes, places)
+
+
+def test_the_identity_is_a_map():
+    found = given_map("shared-pair(4)", lambda nodes, places: None)
+    assert (found.links.tolist(), found.node_sign.tolist()) == ([0, 1, 2, 3], [1, 1])
+
+
+def swap_places(nodes, places):
+    places[1, :2] = 1, 0
+
+
+def swap_nodes(nodes, places):
+    nodes[[0, -1]] = nodes[[-1, 0]]
+
+
+@pytest.mark.parametrize(
+    "recipe, change",
+    # the melon: both nodes keep their neighbours, at other places; two melons: at the same places, others
+    [("shared-pair(4)", swap_places), ("dipole-slab(1)", swap_nodes)],
+    ids=["places", "neighbours"],
+)
+def test_a_rearrangement_that_tears_links_is_no_map(recipe, change):
+    with pytest.raises(dualize.InputError, match="does not carry links to links"):
+        given_map(recipe, change)
 
 
 # --------------------------------------------------------------------------------------------------

@@ -160,6 +160,15 @@ def test_a_directory_in_the_place_of_the_file(tmp_path):
         FOAM.write(tmp_path / "a.json", force=True)
 
 
+def test_the_bytes_are_on_the_disk_before_the_name_is(tmp_path, monkeypatch):
+    order = []
+    for name in ("fsync", "replace"):
+        real = getattr(os, name)
+        monkeypatch.setattr(target.os, name, lambda *a, n=name, f=real: (order.append(n), f(*a))[1])
+    FOAM.write(tmp_path / "a.json")
+    assert order[:2] == ["fsync", "replace"]
+
+
 def test_a_directory_that_may_not_be_written(tmp_path, monkeypatch):
     def forbidden(*args, **kwargs):
         raise PermissionError(errno.EACCES, "Permission denied")

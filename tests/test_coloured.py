@@ -536,3 +536,9 @@ def test_a_gluing_that_turns_colours_has_no_jackets():
     t = Triangulation.from_gluings(table.across, [[list(p) for p in row] for row in table.carry])
     with pytest.raises(dualize.InputError, match="no coloured graph"):
         jackets(t)
+
+
+@pytest.mark.parametrize("end", [-1, 2], ids=["below", "above"])
+def test_an_edge_to_the_first_vertex_that_does_not_exist_is_refused(end):
+    with pytest.raises(dualize.InputError, match="ends at a vertex that does not exist"):
+        from_coloured_edges(2, [[0, end, 0], [0, 1, 1], [0, 1, 2]])

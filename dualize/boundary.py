@@ -152,7 +152,7 @@ def boundary_of(
     if d == 2:
         raise InputError(
             "the boundary of a surface is a set of circles, and triangulations have dimension 2, 3 or 4",
-            hint="take its boundary graph instead",
+            hint="take its boundary graph: dualize boundary --graph, Skeleton.boundary_graph()",
         )
     if not (t.across < 0).any():
         raise TriangulationError("the triangulation is closed: it has no boundary")

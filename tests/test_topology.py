@@ -30,7 +30,7 @@ import dualize
 from dualize import Triangulation, kernels
 from dualize.kernels.permutations import permutations_of
 from dualize.topology import gudhi as bridge
-from dualize.topology.classes import census, classes, corner_subsets, f_vector
+from dualize.topology.classes import all_distinct, census, classes, corner_subsets, count_rows, f_vector
 from dualize.topology.gluing import gluing_of
 from dualize.topology.integral import abelian_group
 from dualize.topology.links import link_figures
@@ -329,3 +329,19 @@ def test_a_periodic_lattice_has_the_homology_of_the_torus():
     assert foam_betti(d1, d2, 2) == (1, 4)
     assert bridge.betti_numbers(bridge.simplex_tree(t.corners), 2) == [1, 4, 6, 4, 1]
     assert link_figures(t, census(t)).simply_connected.all()
+
+
+@pytest.mark.parametrize("kind", ["interpreted", "compiled"])
+@pytest.mark.parametrize("columns", [1, 3, 5])
+def test_equal_rows_are_noticed_whatever_the_labels(kind, columns):
+    random = np.random.default_rng(columns)
+    rows = np.unique(random.integers(-(2**62), 2**62, (4000, columns)), axis=0)
+    with kernels.mode(kind):
+        assert all_distinct(rows)
+        assert not all_distinct(np.concatenate([rows, rows[-1:]]))
+
+
+def test_rows_are_counted_with_and_without_repeats():
+    rows = np.arange(60_000).reshape(-1, 3) << 40
+    assert count_rows(rows) == 20_000
+    assert count_rows(np.concatenate([rows, rows[:7]])) == 20_000

@@ -1,6 +1,6 @@
-"""Kernels that find out whether a ridge label set belongs to several faces, by mixed keys in buckets."""
+"""Kernels that find out whether a set of labels occurs twice, by mixed keys in buckets."""
 
-__all__ = ["any_repeat", "fill_keys", "mix_ridges"]
+__all__ = ["any_repeat", "fill_keys", "mix_ridges", "mix_rows"]
 
 
 def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, shift, axes, size, lo, hi):
@@ -29,6 +29,27 @@ def mix_ridges(corners, vertex, wedge, offsets, slots, factors, key, shift, axes
                     x += 2
         mixed = one ^ ((two & 0x7FFFFFFF) << 31) ^ (two >> 31)
         key[f] = mixed
+        size[mixed >> shift] += 1
+    return 0
+
+
+def mix_rows(rows, factors, key, shift, axes, size, lo, hi):
+    """The same for rows of labels (n, len(axes)), as they stand."""
+    m = len(axes)
+    for r in range(lo, hi):
+        one = 0
+        two = 0
+        x = 0
+        for c in range(m):
+            rest = rows[r * m + c]
+            for _ in range(3):
+                piece = rest & 0x7FFFFFFF
+                one = (one + piece * factors[x]) & 0x3FFFFFFFFFFFFFFF
+                two = (two + piece * factors[x + 1]) & 0x3FFFFFFFFFFFFFFF
+                rest = rest >> 31
+                x += 2
+        mixed = one ^ ((two & 0x7FFFFFFF) << 31) ^ (two >> 31)
+        key[r] = mixed
         size[mixed >> shift] += 1
     return 0
 

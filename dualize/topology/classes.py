@@ -14,14 +14,16 @@ from typing import NamedTuple
 
 import numpy as np
 
-from ..kernels import engine
+from ..kernels import engine, random_factors
 from ..kernels.audit import join_simplices, number_simplices
 from ..kernels.permutations import permutations_of
+from ..kernels.repeats import any_repeat, fill_keys, mix_rows
 from ..triangulation import Triangulation
 
 __all__ = [
     "Census",
     "Classes",
+    "all_distinct",
     "census",
     "classes",
     "corner_subsets",
@@ -29,6 +31,8 @@ __all__ = [
     "distinct_simplices",
     "f_vector",
 ]
+
+COUNTED_FROM = 10_000  # rows from which looking for repeats first is quicker than a sort
 
 
 @dataclass(frozen=True, eq=False)
@@ -180,6 +184,8 @@ def count_rows(rows: np.ndarray) -> int:
     """How many different rows there are, integers of any size, shape (N, m)."""
     if len(rows) == 0:
         return 0
+    if len(rows) >= COUNTED_FROM and all_distinct(rows):
+        return len(rows)
     points, span = _from_zero(rows)
     if span ** rows.shape[1] >= 2**63:
         return len(np.unique(rows, axis=0))
@@ -189,6 +195,18 @@ def count_rows(rows: np.ndarray) -> int:
         key += column
     key.sort()
     return int((key[1:] != key[:-1]).sum()) + 1
+
+
+def all_distinct(rows: np.ndarray) -> bool:
+    """Whether no two rows of int64, shape (N, m), are equal; false also by a rare accident of keys."""
+    n, m = rows.shape
+    run = engine(n)
+    shift = 62 - max(1, (n // 16).bit_length())
+    key, entry = np.empty(n, dtype=np.int64), np.empty(n, dtype=np.int64)
+    flat = np.ascontiguousarray(rows, dtype=np.int64).ravel()
+    mix = (mix_rows, flat, random_factors(6 * m), key, shift, tuple(range(m)))
+    start = run.bucketed(n, 1 << (62 - shift), mix, (fill_keys, key, entry, shift))
+    return not any(run.split(any_repeat, len(start) - 1, start, entry))
 
 
 def f_vector(labels: np.ndarray) -> list[int]:

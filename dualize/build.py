@@ -13,7 +13,7 @@ from typing import NamedTuple
 import numpy as np
 
 from .errors import TriangulationError
-from .kernels import Engine, engine, random_factors
+from .kernels import Engine, engine
 from .kernels.classes import join_pairs, join_points, join_segments, number_classes, number_segments
 from .kernels.faces import (
     fill_edge_faces,
@@ -25,7 +25,7 @@ from .kernels.faces import (
 )
 from .kernels.orient import count_edges, fill_edges, spread_orientation
 from .kernels.permutations import Permutations, permutations_of
-from .kernels.repeats import any_repeat, fill_keys, mix_ridges
+from .kernels.repeats import mix_ridges
 from .layout import id_dtype, wedge_pairs
 from .memory import check_memory
 from .skeleton import Skeleton
@@ -478,17 +478,10 @@ def _refuse(what: str, places: list[str], count: int) -> TriangulationError:
 def _has_pinches(work: _Work, faces: _Faces) -> bool:
     """Whether one set of ridge labels belongs to several faces."""
     assert work.t.corners is not None
-    run, n = work.run, len(faces.twists)
-    a = faces.arrays
-    factors = random_factors(6 * (work.d - 1))
-    shift = 62 - max(1, (n // 16).bit_length())
-    key = np.empty(n, dtype=np.int64)
-    corners, slots = work.t.corners.ravel(), work.slots.ravel()
+    n, a = len(faces.twists), faces.arrays
     tables = (a["faces/vertex"], a["faces/wedge"], a["faces/vertex_offsets"])
-    entry = np.empty(n, dtype=np.int64)
-    mix = (mix_ridges, corners, *tables, slots, factors, key, shift, work.axes)
-    start = run.bucketed(n, 1 << (62 - shift), mix, (fill_keys, key, entry, shift))
-    if not any(run.split(any_repeat, len(start) - 1, start, entry)):
+    mix = (mix_ridges, work.t.corners.ravel(), *tables, work.slots.ravel())
+    if not work.run.repeats(n, work.d - 1, work.axes, mix):
         return False
     # equal keys are equal ridges but for an accident
     return len(np.unique(_ridges(work, faces), axis=0)) < n

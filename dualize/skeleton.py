@@ -12,7 +12,7 @@ nodes and links included.  `dualize.layout.TABLES` lists every table; ``dualize 
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
@@ -372,13 +372,6 @@ def same_tables(one: Mapping[str, Any], two: Mapping[str, Any]) -> bool:
 
 def _restore(*parts: Any) -> Skeleton:
     return Skeleton(*parts)
-
-
-def iter_tables(skeleton: Skeleton) -> Iterator[tuple[str, np.ndarray]]:
-    """The tables of a skeleton in the order of the layout."""
-    for name in TABLES:
-        if name in skeleton.arrays:
-            yield name, skeleton.arrays[name]
 
 
 _GROUPS = frozenset(name.split("/")[0] for name in TABLES)

@@ -92,6 +92,20 @@ class Engine:
         self.each(fill[0], [(*fill[1:], sizes[r], *ends) for r, ends in enumerate(ranges)])
         return start
 
+    def repeats(self, length: int, labels: int, axes: tuple[int, ...], mix: tuple) -> bool:
+        """Whether two of `length` sets of labels have equal keys: surely so if two of the sets are equal.
+
+        `mix` is a kernel of `kernels.repeats` that makes keys, and its first arguments; `labels` is how many
+        labels a set has.  Different sets have equal keys only by accident, with odds of about 2**-60.
+        """
+        from .repeats import any_repeat, fill_keys
+
+        shift = 62 - max(1, (length // 16).bit_length())
+        key, entry = np.empty(length, dtype=np.int64), np.empty(length, dtype=np.int64)
+        count = (*mix, random_factors(6 * labels), key, shift, axes)
+        start = self.bucketed(length, 1 << (62 - shift), count, (fill_keys, key, entry, shift))
+        return any(self.split(any_repeat, len(start) - 1, start, entry))
+
     def tasks(self, functions: list[Callable[[], Any]]) -> list[Any]:
         """Call the functions, at most `threads` at a time and begun in order; their results in order."""
         if self.inline:

@@ -14,10 +14,10 @@ from typing import NamedTuple
 
 import numpy as np
 
-from ..kernels import engine, random_factors
+from ..kernels import engine
 from ..kernels.audit import join_simplices, number_simplices
 from ..kernels.permutations import permutations_of
-from ..kernels.repeats import any_repeat, fill_keys, mix_rows
+from ..kernels.repeats import mix_rows
 from ..triangulation import Triangulation
 
 __all__ = [
@@ -200,13 +200,8 @@ def count_rows(rows: np.ndarray) -> int:
 def all_distinct(rows: np.ndarray) -> bool:
     """Whether no two rows of int64, shape (N, m), are equal; false also by a rare accident of keys."""
     n, m = rows.shape
-    run = engine(n)
-    shift = 62 - max(1, (n // 16).bit_length())
-    key, entry = np.empty(n, dtype=np.int64), np.empty(n, dtype=np.int64)
     flat = np.ascontiguousarray(rows, dtype=np.int64).ravel()
-    mix = (mix_rows, flat, random_factors(6 * m), key, shift, tuple(range(m)))
-    start = run.bucketed(n, 1 << (62 - shift), mix, (fill_keys, key, entry, shift))
-    return not any(run.split(any_repeat, len(start) - 1, start, entry))
+    return not engine(n).repeats(n, m, tuple(range(m)), (mix_rows, flat))
 
 
 def f_vector(labels: np.ndarray) -> list[int]:
